@@ -1,0 +1,1 @@
+"""From measurements, plan and rules to a frozen result."""

@@ -1,0 +1,1 @@
+"""One report checked from its own contents."""

@@ -1,0 +1,1 @@
+"""The inbox: listings, readiness, claims, refusals."""

@@ -1,0 +1,1 @@
+"""Render, seal, publish, record: the steps that make a report exist."""

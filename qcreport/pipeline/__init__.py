@@ -1,0 +1,1 @@
+"""One export through all stages."""

@@ -1,0 +1,1 @@
+"""What is compared, against which margin, on which independent unit."""

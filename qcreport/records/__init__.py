@@ -1,0 +1,1 @@
+"""Archive, ledger, report numbers and the measurement store."""

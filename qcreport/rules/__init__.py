@@ -1,0 +1,1 @@
+"""Facts, the decision table, and the choice of procedure with its trace."""

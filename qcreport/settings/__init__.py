@@ -1,0 +1,1 @@
+"""A site's folders and settings files."""

@@ -1,0 +1,1 @@
+"""Keys, the seal, signatures and their verification."""

@@ -1,0 +1,1 @@
+"""Reading an export: bounded scanner, layouts, the reader child."""

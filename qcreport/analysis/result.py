@@ -1,0 +1,463 @@
+"""The frozen result of an analysis and its JSON form `qcreport/result/1`.
+
+Every number is kept at full double precision; rounding happens in the report and nowhere else.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any
+
+from qcreport.canonical import finite_or_none
+from qcreport.measurements import Censoring, Notice
+
+RESULT_SCHEMA = "qcreport/result/1"
+
+Json = dict[str, Any]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class UnitValue:
+    """One value of the independent unit: a reading, or the mean of the readings below it."""
+
+    value: float
+    """In the characteristic's unit; the limit itself where censored."""
+    text: str
+    """Stored text of the reading; empty where several readings were averaged."""
+    decimals: int
+    """Most decimals the export shows among its readings."""
+    sample: str | None
+    """Sample id, where the layout gives one."""
+    cells: tuple[str, ...]
+    """Cells of its readings."""
+    censored: Censoring | None
+    """None for a plain number."""
+    marks: tuple[str, ...]
+    """Marks of its cells: struck, commented, hidden."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class GroupResult:
+    """One group (batch or line) as compared or described."""
+
+    label: str
+    """Batch or line label."""
+    n: int
+    """Independent units with a value."""
+    n_readings: int
+    """Readings behind them."""
+    mean: float
+    """Arithmetic mean, in the unit."""
+    sd: float | None
+    """Standard deviation (n − 1), in the unit; None for n = 1."""
+    minimum: float
+    """Lowest value, in the unit."""
+    maximum: float
+    """Highest value, in the unit."""
+    median: float
+    """Median, in the unit."""
+    censored: int
+    """Units known only by a limit."""
+    missing: int
+    """Cells that hold a marker for a missing value."""
+    cells: tuple[str, ...]
+    """Cells of every reading used, export order."""
+    units: tuple[UnitValue, ...]
+    """The values, export order (for figure and data section; not in the JSON)."""
+
+    def to_json(self) -> Json:
+        """Return the form of `result.json`."""
+        return {
+            "label": self.label,
+            "n": self.n,
+            "n_readings": self.n_readings,
+            "mean": finite_or_none(self.mean),
+            "sd": finite_or_none(self.sd),
+            "median": finite_or_none(self.median),
+            "minimum": finite_or_none(self.minimum),
+            "maximum": finite_or_none(self.maximum),
+            "censored": self.censored,
+            "missing": self.missing,
+            "cells": list(self.cells),
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class NotCompared:
+    """A group that is described but not compared."""
+
+    label: str
+    """Batch or line label."""
+    n: int
+    """Independent units with a value."""
+    reason: str
+    """One sentence."""
+
+    def to_json(self) -> Json:
+        """Return the form of `result.json`."""
+        return {"label": self.label, "n": self.n, "reason": self.reason}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Check:
+    """One check of an assumption, as computed."""
+
+    name: str
+    """brown_forsythe, bartlett, cochran_c, spread_ratio_limit, spread_conflict."""
+    statistic: float | None
+    """The check's statistic, dimensionless."""
+    df: tuple[float, ...]
+    """Degrees of freedom, empty where the check has none."""
+    p: float | None
+    """Tail probability, None where the check has none."""
+    threshold: float | None
+    """What statistic or p is held against."""
+    met: bool | None
+    """Whether the assumption stands by this check; None where it is description only."""
+    note: str = ""
+    """Group concerned or other detail."""
+
+    def to_json(self) -> Json:
+        """Return the form of `result.json`."""
+        return {
+            "name": self.name,
+            "statistic": finite_or_none(self.statistic),
+            "df": [finite_or_none(d) for d in self.df],
+            "p": finite_or_none(self.p),
+            "threshold": finite_or_none(self.threshold),
+            "met": self.met,
+            "note": self.note,
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class FactEvidence:
+    """Why a fact has its value."""
+
+    fact: str
+    """comparison, sizes, smallest_n, groups, spread, censored, scale."""
+    value: str
+    """The fact's value as the decision table sees it."""
+    observed: str
+    """What was seen or declared, one sentence."""
+    source: str
+    """Plan, export, or the published check."""
+
+    def to_json(self) -> Json:
+        """Return the form of `result.json`."""
+        return {"fact": self.fact, "value": self.value, "observed": self.observed, "source": self.source}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class TraceStep:
+    """One row of the decision table as tried."""
+
+    id: str
+    """Row id."""
+    applied: bool
+    """True for the row that decided (the last one tried)."""
+    why: str
+    """Why it did not apply, or that it did."""
+
+    def to_json(self) -> Json:
+        """Return the form of `result.json`."""
+        return {"id": self.id, "applied": self.applied, "why": self.why}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RuleApplied:
+    """The row that chose the procedure."""
+
+    table: str
+    """default, textbook, a lab's own, or `plan` for a procedure fixed in the plan."""
+    id: str
+    """Row id; `fixed_by_plan` where the plan fixes the procedure."""
+    reason: str
+    """The row's reason, one sentence."""
+    source: str
+    """Publication or measurement the row rests on."""
+
+    def to_json(self) -> Json:
+        """Return the form of `result.json`."""
+        return {"table": self.table, "id": self.id, "reason": self.reason, "source": self.source}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Overall:
+    """The overall test; never a gate for the pairs."""
+
+    name: str
+    """anova, welch or kruskal_wallis."""
+    statistic: float | None
+    """F or H."""
+    df: tuple[float, ...]
+    """Numerator and denominator degrees of freedom."""
+    p: float | None
+    """Tail probability."""
+    ms_within: float | None
+    """Mean square within groups, unit squared; None where not pooled."""
+    ms_between: float | None
+    """Mean square between groups, unit squared; None where not pooled."""
+    ss_within: float | None
+    """Sum of squares within groups; None where not pooled."""
+    ss_between: float | None
+    """Sum of squares between groups; None where not pooled."""
+    supported_digits: int
+    """Significant digits of the statistic that the data support."""
+
+    def to_json(self) -> Json:
+        """Return the form of `result.json`."""
+        return {
+            "name": self.name,
+            "statistic": finite_or_none(self.statistic),
+            "df": [finite_or_none(d) for d in self.df],
+            "p": finite_or_none(self.p),
+            "ms_within": finite_or_none(self.ms_within),
+            "ms_between": finite_or_none(self.ms_between),
+            "ss_within": finite_or_none(self.ss_within),
+            "ss_between": finite_or_none(self.ss_between),
+            "supported_digits": self.supported_digits,
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class PairResult:
+    """One compared pair; `difference` is first minus second."""
+
+    first: str
+    """Label; with a reference the group."""
+    second: str
+    """Label; with a reference the reference."""
+    difference: float
+    """first − second in the unit; a ratio of geometric means on the log scale."""
+    se: float | None
+    """Standard error of the difference (natural log units on the log scale)."""
+    statistic: float | None
+    """difference / se, signed."""
+    df: float | None
+    """Degrees of freedom; None for C, `dunnett_weighted` and ranks."""
+    critical_value: float | None
+    """Critical value on the scale of |statistic|."""
+    p: float
+    """Adjusted for all pairs."""
+    lower: float | None
+    """Lower end of the simultaneous interval; None for a one-sided bound's open end."""
+    upper: float | None
+    """Upper end of the simultaneous interval."""
+    detectable: float | None
+    """Difference that would be shown with probability 0.80 by this design, in the unit."""
+    needed_n: int | None
+    """Results a group that would settle an open pair, if the scatter is as seen; None where settled."""
+    answer: str
+    """Code of the answer."""
+
+    def to_json(self) -> Json:
+        """Return the form of `result.json`."""
+        return {
+            "first": self.first,
+            "second": self.second,
+            "difference": finite_or_none(self.difference),
+            "se": finite_or_none(self.se),
+            "statistic": finite_or_none(self.statistic),
+            "df": finite_or_none(self.df),
+            "critical_value": finite_or_none(self.critical_value),
+            "p": finite_or_none(self.p),
+            "lower": finite_or_none(self.lower),
+            "upper": finite_or_none(self.upper),
+            "detectable": finite_or_none(self.detectable),
+            "needed_n": self.needed_n,
+            "answer": self.answer,
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ChangedAnswer:
+    """A pair whose answer another variance policy would change."""
+
+    first: str
+    """Label."""
+    second: str
+    """Label."""
+    answer: str
+    """The answer it would get."""
+
+    def to_json(self) -> Json:
+        """Return the form of `result.json`."""
+        return {"first": self.first, "second": self.second, "answer": self.answer}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Sensitivity:
+    """Exactly one alternative: the procedure of the other variance policy."""
+
+    procedure: str
+    """Procedure name."""
+    changed: tuple[ChangedAnswer, ...]
+    """Pairs whose answer would change."""
+
+    def to_json(self) -> Json:
+        """Return the form of `result.json`."""
+        return {"procedure": self.procedure, "changed": [c.to_json() for c in self.changed]}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Flagged:
+    """An outlying value: flagged, never dropped."""
+
+    group: str
+    """Batch or line label."""
+    cell: str
+    """Cell of the value (first cell where readings were averaged)."""
+    value: float
+    """In the unit."""
+    test: str
+    """grubbs."""
+    statistic: float
+    """The test's statistic."""
+    p: float
+    """Upper bound of the tail probability."""
+    changes_answer: bool | None
+    """Whether any pair's answer would change without it; None where that cannot be computed."""
+
+    def to_json(self) -> Json:
+        """Return the form of `result.json`."""
+        return {
+            "group": self.group,
+            "cell": self.cell,
+            "value": finite_or_none(self.value),
+            "test": self.test,
+            "statistic": finite_or_none(self.statistic),
+            "p": finite_or_none(self.p),
+            "changes_answer": self.changes_answer,
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CharacteristicResult:
+    """Everything about one characteristic."""
+
+    name: str
+    """As the layout calls it."""
+    title: str
+    """As the report prints it."""
+    unit: str
+    """Unit of values, means and differences."""
+    alpha: float
+    """Family-wise error rate used."""
+    margin: tuple[float | None, float | None]
+    """Smallest difference that matters, below (≤ 0) and above (≥ 0); (None, None) where none is set."""
+    scale: str
+    """`as measured` or `log`."""
+    direction: str
+    """both, lower_matters or higher_matters."""
+    lower_limit: float | None
+    """Specification limit, for orientation."""
+    upper_limit: float | None
+    """Specification limit, for orientation."""
+    independent_unit: str
+    """reading, sample or batch."""
+    reference: str | None
+    """Label of the reference group, or None for every pair."""
+    groups: tuple[GroupResult, ...]
+    """Compared groups, order of first appearance."""
+    not_compared: tuple[NotCompared, ...]
+    """Groups described only."""
+    checks: tuple[Check, ...]
+    """Checks as computed."""
+    facts: tuple[FactEvidence, ...]
+    """Facts with their evidence."""
+    rule: RuleApplied
+    """The row that chose."""
+    trace: tuple[TraceStep, ...]
+    """Rows tried, in order."""
+    overall: Overall | None
+    """The overall test."""
+    procedure: str
+    """Procedure name, `none` where nothing is compared."""
+    critical_value: float | None
+    """Common critical value on the scale of |statistic|; None unless common."""
+    hsd: float | None
+    """Tukey's honestly significant difference; None where sizes differ."""
+    all_within_margin: bool | None
+    """Two one-sided tests for every pair; None without a margin or pairs."""
+    pairs: tuple[PairResult, ...]
+    """i < j in group order; with a reference each group with it."""
+    sensitivity: Sensitivity | None
+    """One alternative, or None."""
+    flagged: tuple[Flagged, ...]
+    """Outlying values."""
+    answer: str
+    """Code of the most serious pair."""
+
+    def fact_values(self) -> dict[str, str]:
+        """Return the facts as the decision table saw them."""
+        return {f.fact: f.value for f in self.facts}
+
+    def to_json(self) -> Json:
+        """Return the form of `result.json`."""
+        return {
+            "name": self.name,
+            "title": self.title,
+            "unit": self.unit,
+            "alpha": self.alpha,
+            "margin": [finite_or_none(self.margin[0]), finite_or_none(self.margin[1])],
+            "scale": self.scale,
+            "direction": self.direction,
+            "lower_limit": finite_or_none(self.lower_limit),
+            "upper_limit": finite_or_none(self.upper_limit),
+            "independent_unit": self.independent_unit,
+            "reference": self.reference,
+            "groups": [g.to_json() for g in self.groups],
+            "not_compared": [g.to_json() for g in self.not_compared],
+            "checks": [c.to_json() for c in self.checks],
+            "facts": self.fact_values(),
+            "facts_evidence": [f.to_json() for f in self.facts],
+            "rule": self.rule.to_json(),
+            "trace": [t.to_json() for t in self.trace],
+            "overall": None if self.overall is None else self.overall.to_json(),
+            "procedure": self.procedure,
+            "critical_value": finite_or_none(self.critical_value),
+            "hsd": finite_or_none(self.hsd),
+            "all_within_margin": self.all_within_margin,
+            "pairs": [p.to_json() for p in self.pairs],
+            "components": None,
+            "sensitivity": None if self.sensitivity is None else self.sensitivity.to_json(),
+            "flagged": [f.to_json() for f in self.flagged],
+            "answer": self.answer,
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Result:
+    """The result of one export compared by one plan."""
+
+    export_name: str
+    """File name as dropped."""
+    export_sha256: str
+    """Digest of its bytes."""
+    plan_name: str
+    """Name in the plan."""
+    plan_sha256: str
+    """Digest of the plan file's bytes."""
+    run_k: int
+    """This is run k …"""
+    run_n: int
+    """… of n over this export."""
+    notices: tuple[Notice, ...]
+    """Notices of the reading and of the analysis."""
+    characteristics: tuple[CharacteristicResult, ...]
+    """In plan order."""
+    versions: tuple[tuple[str, str], ...]
+    """(package, version) that computed it."""
+
+    def to_json(self) -> Json:
+        """Return the document `qcreport/result/1`."""
+        return {
+            "schema": RESULT_SCHEMA,
+            "export": {"name": self.export_name, "sha256": self.export_sha256},
+            "plan": {"name": self.plan_name, "sha256": self.plan_sha256},
+            "run": {"k": self.run_k, "n": self.run_n},
+            "notices": [{"code": n.code, "cells": list(n.cells), "text": n.text} for n in self.notices],
+            "characteristics": [c.to_json() for c in self.characteristics],
+            "versions": dict(self.versions),
+        }

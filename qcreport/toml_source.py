@@ -147,7 +147,7 @@ class TableReader:
         """Return whether the key is present."""
         return key in self._data
 
-    def keys(self) -> Iterator[str]:
+    def names(self) -> Iterator[str]:
         """Return the keys present, in file order."""
         return iter(self._data)
 

@@ -56,7 +56,7 @@ class UnitValue:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class GroupResult:
-    """One group (batch or line) as compared or described."""
+    """One group (batch or line) that holds a value, compared or only described."""
 
     label: str
     """Batch or line label."""
@@ -64,16 +64,16 @@ class GroupResult:
     """Independent units with a value."""
     n_readings: int
     """Readings behind them."""
-    mean: float
-    """Arithmetic mean, in the unit."""
+    mean: float | None
+    """Arithmetic mean, in the unit; None where a value is known only by a limit."""
     sd: float | None
-    """Standard deviation (n − 1), in the unit; None for n = 1."""
-    minimum: float
-    """Lowest value, in the unit."""
-    maximum: float
-    """Highest value, in the unit."""
-    median: float
-    """Median, in the unit."""
+    """Standard deviation (n − 1), in the unit; None for n = 1 or where a value is known only by a limit."""
+    minimum: float | None
+    """Lowest value, in the unit; None where a value is known only by a limit."""
+    maximum: float | None
+    """Highest value, in the unit; None where a value is known only by a limit."""
+    median: float | None
+    """Median, in the unit; None where a value is known only by a limit."""
     censored: int
     """Units known only by a limit."""
     missing: int
@@ -293,9 +293,9 @@ class CharacteristicResult:
     reference: str | None
     """Label of the reference group, or None for every pair."""
     groups: tuple[GroupResult, ...]
-    """Compared groups, order of first appearance."""
+    """Every group that holds a value, order of first appearance."""
     not_compared: tuple[NotCompared, ...]
-    """Groups described only."""
+    """Those of them (and groups without any value) that are not compared, with the reason."""
     checks: tuple[Check, ...]
     """Checks as computed."""
     facts: tuple[FactEvidence, ...]
@@ -305,7 +305,9 @@ class CharacteristicResult:
     trace: tuple[TraceStep, ...]
     """Rows tried, in order."""
     overall: Overall | None
-    """The overall test."""
+    """The overall test, following the spread fact."""
+    analysis_of_variance: Overall | None
+    """One-way analysis of variance, always, as description; None where nothing can be computed."""
     procedure: str
     """Procedure name, `none` where nothing is compared."""
     critical_value: float | None
@@ -349,6 +351,9 @@ class CharacteristicResult:
             "rule": self.rule.to_json(),
             "trace": [t.to_json() for t in self.trace],
             "overall": None if self.overall is None else self.overall.to_json(),
+            "analysis_of_variance": (
+                None if self.analysis_of_variance is None else self.analysis_of_variance.to_json()
+            ),
             "procedure": self.procedure,
             "critical_value": finite_or_none(self.critical_value),
             "hsd": finite_or_none(self.hsd),

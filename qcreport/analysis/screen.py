@@ -1,0 +1,168 @@
+"""From measurements to groups of independent units: who is compared, who is only described."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable
+from dataclasses import dataclass
+from typing import TypeVar
+
+from qcreport.analysis.result import UnitValue
+from qcreport.errors import ExportRefusedError
+from qcreport.measurements import Censoring, Measurement, MeasurementSet
+from qcreport.plan.model import CharacteristicPlan, ComparisonPlan, Groups, Unit
+
+_Key = tuple[str, ...]
+_K = TypeVar("_K")
+_V = TypeVar("_V")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Group:
+    """One batch or line with its independent units, export order."""
+
+    label: str
+    """Batch or line."""
+    units: tuple[UnitValue, ...]
+    """Independent units that hold a value or a limit."""
+    n_readings: int
+    """Readings behind them."""
+    missing: int
+    """Cells with a marker for a missing value."""
+
+    @property
+    def n(self) -> int:
+        """Number of independent units."""
+        return len(self.units)
+
+    @property
+    def values(self) -> tuple[float, ...]:
+        """Values of the units, in the unit of the characteristic (a limit where censored)."""
+        return tuple(u.value for u in self.units)
+
+    @property
+    def censored(self) -> int:
+        """Units known only by a limit."""
+        return sum(u.censored is not None for u in self.units)
+
+
+def groups_of(
+    measurements: MeasurementSet, plan: ComparisonPlan, characteristic: CharacteristicPlan
+) -> tuple[Group, ...]:
+    """Return the groups of one characteristic, order of first appearance.
+
+    Readings finer than the independent unit are averaged to it, stepwise and unweighted. A value that is not
+    detected enters as 0 with the mark `nd`: it can only be ranked or counted, never averaged with a number.
+
+    Raises
+    ------
+    ExportRefusedError
+        `unit_conflict` where the export's unit is not the plan's; `group_missing` where lines are compared and
+        a value has none.
+    """
+    mine = [m for m in measurements.measurements if m.characteristic == characteristic.name]
+    _check_units(measurements, mine, characteristic)
+    by_label = _gathered((_label(measurements, m, plan.groups), m) for m in mine)
+    return tuple(_group(label, members, plan.independent_unit) for label, members in by_label.items())
+
+
+def _gathered(pairs: Iterable[tuple[_K, _V]]) -> dict[_K, list[_V]]:
+    """Return the values of each key; keys in order of first appearance, values in order."""
+    found: dict[_K, list[_V]] = {}
+    for key, value in pairs:
+        found.setdefault(key, []).append(value)
+    return found
+
+
+def _check_units(
+    measurements: MeasurementSet, mine: Iterable[Measurement], characteristic: CharacteristicPlan
+) -> None:
+    for m in mine:
+        if m.unit != characteristic.unit:
+            raise ExportRefusedError(
+                "unit_conflict",
+                file=measurements.export_name,
+                where=str(m.cell),
+                found=f"{characteristic.name} comes in {m.unit!r}.",
+                expected=f"The plan compares it in {characteristic.unit!r}.",
+                next_step="Correct the unit in the plan or the layout, whichever is wrong.",
+                cells=(str(m.cell),),
+            )
+
+
+def _label(measurements: MeasurementSet, m: Measurement, groups: Groups) -> str:
+    if groups is Groups.BATCH:
+        return m.batch
+    if m.line is None:
+        raise ExportRefusedError(
+            "group_missing",
+            file=measurements.export_name,
+            where=str(m.cell),
+            found="This value has no production line.",
+            expected="The plan compares lines, so every value needs one.",
+            next_step="Fill in the line in the export, or tell the layout where it stands (line = …).",
+            cells=(str(m.cell),),
+        )
+    return m.line
+
+
+def _group(label: str, members: list[Measurement], unit: Unit) -> Group:
+    present = [m for m in members if not m.missing]
+    readings = [(_unit_key(m, unit), _reading(m)) for m in present]
+    if unit is not Unit.READING:
+        readings = _averaged(readings)  # reading → sample
+    if unit is Unit.BATCH:
+        readings = _averaged([(key[:1], value) for key, value in readings])  # sample → batch
+    return Group(
+        label=label,
+        units=tuple(value for _, value in readings),
+        n_readings=len(present),
+        missing=len(members) - len(present),
+    )
+
+
+def _unit_key(m: Measurement, unit: Unit) -> _Key:
+    """Return the batch and sample a reading belongs to; without a sample id each cell is its own sample."""
+    if unit is Unit.READING or m.sample is None:
+        return (m.batch, str(m.cell), "")
+    return (m.batch, m.sample, "sample")
+
+
+def _reading(m: Measurement) -> UnitValue:
+    return UnitValue(
+        value=0.0 if m.value is None else m.value,
+        text=m.text,
+        decimals=m.decimals,
+        sample=m.sample,
+        cells=(str(m.cell),),
+        censored=m.censored,
+        marks=m.marks,
+    )
+
+
+def _averaged(readings: list[tuple[_Key, UnitValue]]) -> list[tuple[_Key, UnitValue]]:
+    """Return one value for each key, order of first appearance."""
+    return [(key, _mean_of(values)) for key, values in _gathered(readings).items()]
+
+
+def _mean_of(values: list[UnitValue]) -> UnitValue:
+    """Return the mean of readings; censored as soon as one of them is (the mean is then no number)."""
+    if len(values) == 1:
+        return values[0]
+    limits = {v.censored for v in values if v.censored is not None}
+    return UnitValue(
+        value=math.fsum(v.value for v in values) / len(values),
+        text="",
+        decimals=max(v.decimals for v in values),
+        sample=values[0].sample,
+        cells=tuple(cell for v in values for cell in v.cells),
+        censored=_joint(limits),
+        marks=tuple(dict.fromkeys(mark for v in values for mark in v.marks)),
+    )
+
+
+def _joint(limits: set[Censoring | None]) -> Censoring | None:
+    """Return the censoring of a mean: that of its readings where they agree, else `nd` (no side known)."""
+    if not limits:
+        return None
+    return limits.pop() if len(limits) == 1 else Censoring.NOT_DETECTED

@@ -11,6 +11,7 @@ from typing import Any
 from qcreport.canonical import finite_or_none
 from qcreport.measurements import Censoring, Notice
 from qcreport.rules.evidence import Check, FactEvidence, RuleApplied, TraceStep
+from qcreport.rules.facts import NUMBERS
 
 __all__ = [
     "ChangedAnswer",
@@ -325,9 +326,9 @@ class CharacteristicResult:
     answer: str
     """Code of the most serious pair."""
 
-    def fact_values(self) -> dict[str, str]:
+    def fact_values(self) -> dict[str, str | int]:
         """Return the facts as the decision table saw them."""
-        return {f.fact: f.value for f in self.facts}
+        return {f.fact: int(f.value) if f.fact in NUMBERS else f.value for f in self.facts}
 
     def to_json(self) -> Json:
         """Return the form of `result.json`."""

@@ -57,7 +57,7 @@ def groups_of(
     Raises
     ------
     ExportRefusedError
-        `unit_conflict` where the export's unit is not the plan's; `group_missing` where lines are compared and
+        `unit_conflict` where the unit is not the plan's; `group_missing` where lines are compared and
         a value has none.
     """
     mine = [m for m in measurements.measurements if m.characteristic == characteristic.name]
@@ -161,7 +161,7 @@ def _mean_of(values: list[UnitValue]) -> UnitValue:
     )
 
 
-def _joint(limits: set[Censoring | None]) -> Censoring | None:
+def _joint(limits: set[Censoring]) -> Censoring | None:
     """Return the censoring of a mean: that of its readings where they agree, else `nd` (no side known)."""
     if not limits:
         return None

@@ -12,6 +12,7 @@ import datetime as dt
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+from qcreport.errors import StatisticsError
 from qcreport.plan.model import SpreadDeclaration
 from qcreport.rules.evidence import Check
 from qcreport.rules.facts import CANNOT_BE_JUDGED, CONFLICT, DIFFERENT, SIMILAR
@@ -90,17 +91,8 @@ class _Checks:
         *,
         declared: bool,
     ) -> _Checks:
-        found = brown_forsythe([g.label for g in groups], values)
-        levene = Check(
-            name="brown_forsythe",
-            statistic=found.statistic,
-            df=found.df,
-            p=found.p,
-            threshold=policy.different_level,
-            met=None if found.p is None else found.p >= policy.different_level,
-        )
         return cls(
-            levene=levene,
+            levene=_levene_check(groups, values, policy),
             limit=_limit_check(groups, policy),
             conflict=_conflict_check(groups, policy) if declared else None,
             description=_description(groups),
@@ -109,6 +101,23 @@ class _Checks:
     def all(self) -> tuple[Check, ...]:
         conflict = () if self.conflict is None else (self.conflict,)
         return (self.levene, self.limit, *conflict, *self.description)
+
+
+def _levene_check(
+    groups: Sequence[GroupSummary], values: Sequence[Sequence[float]], policy: SpreadPolicy
+) -> Check:
+    try:
+        found = brown_forsythe([g.label for g in groups], values)
+    except StatisticsError as error:
+        return _undefined("brown_forsythe", error.text)
+    return Check(
+        name="brown_forsythe",
+        statistic=found.statistic,
+        df=found.df,
+        p=found.p,
+        threshold=policy.different_level,
+        met=None if found.p is None else found.p >= policy.different_level,
+    )
 
 
 def _limit_check(groups: Sequence[GroupSummary], policy: SpreadPolicy) -> Check:
@@ -124,24 +133,37 @@ def _limit_check(groups: Sequence[GroupSummary], policy: SpreadPolicy) -> Check:
 
 
 def _conflict_check(groups: Sequence[GroupSummary], policy: SpreadPolicy) -> Check:
+    """Return the check of the group that exceeds the pooled rest most."""
     found = spread_conflict(groups, alpha=policy.conflict_level)
+    worst = min(found.groups, key=lambda g: g.p)
     return Check(
         name="spread_conflict",
-        statistic=found.statistic,
-        df=found.df,
-        p=found.p,
-        threshold=found.threshold,
+        statistic=worst.statistic,
+        df=(worst.df_group, worst.df_rest),
+        p=worst.p,
+        threshold=policy.conflict_level / len(groups),
         met=not found.conflict,
-        note=found.label,
+        note=worst.label,
     )
 
 
 def _description(groups: Sequence[GroupSummary]) -> tuple[Check, ...]:
     """Return Bartlett's and Cochran's checks, printed as description and never used to choose."""
-    found = (bartlett(groups), cochran_c(groups))
-    return tuple(
-        Check(name=c.name, statistic=c.statistic, df=c.df, p=c.p, threshold=None, met=None) for c in found
-    )
+    described: list[Check] = []
+    for name, check in (("bartlett", bartlett), ("cochran_c", cochran_c)):
+        try:
+            found = check(groups)
+        except StatisticsError as error:
+            described.append(_undefined(name, error.text))
+        else:
+            described.append(
+                Check(name=name, statistic=found.statistic, df=found.df, p=found.p, threshold=None, met=None)
+            )
+    return tuple(described)
+
+
+def _undefined(name: str, why: str) -> Check:
+    return Check(name=name, statistic=None, df=(), p=None, threshold=None, met=None, note=why)
 
 
 def _by_this_export(checks: _Checks, policy: SpreadPolicy) -> tuple[str, str, str]:

@@ -1,0 +1,114 @@
+"""The analysis: a pure function of export, plan, layout, rules and context."""
+
+from __future__ import annotations
+
+import datetime as dt
+from collections.abc import Mapping
+
+from qcreport.analysis.characteristic import characteristic_result
+from qcreport.analysis.context import Context
+from qcreport.analysis.outcome import Question
+from qcreport.analysis.result import Result
+from qcreport.analysis.screen import groups_of
+from qcreport.errors import ExportRefusedError
+from qcreport.measurements import MeasurementSet, Notice
+from qcreport.plan.model import CharacteristicPlan, ComparisonPlan, Family
+from qcreport.rules import RulesTable
+
+
+def analyse(
+    measurements: MeasurementSet,
+    plan: ComparisonPlan,
+    rules: RulesTable,
+    context: Context,
+    versions: Mapping[str, str],
+) -> Result:
+    """Compare the groups of every characteristic in the plan.
+
+    Parameters
+    ----------
+    measurements
+        All that was read from the export.
+    plan, rules
+        What is compared, and the decision table that chooses how.
+    context
+        Facts of the moment; the export's name, the plan's digest and run k of n enter the result.
+    versions
+        (package, version) of what computes, for the record.
+
+    Raises
+    ------
+    ExportRefusedError
+        `reference_missing`, `unit_conflict`, `group_missing`, `no_data_rows`.
+    """
+    if not measurements.measurements:
+        raise _no_values(measurements, plan)
+    alpha = plan.alpha
+    if plan.family is Family.EXPORT:
+        alpha /= len(plan.characteristics)
+    earliest = earliest_date(measurements)
+    results, notices = [], list(measurements.notices)
+    for characteristic in plan.characteristics:
+        groups = groups_of(measurements, plan, characteristic)
+        _require_reference(measurements, plan, characteristic, [g.label for g in groups])
+        question = Question(
+            plan=plan, characteristic=characteristic, rules=rules, alpha=alpha, earliest=earliest
+        )
+        result, added = characteristic_result(groups, question)
+        results.append(result)
+        notices.extend(added)
+    notices.extend(_late_approval(plan, earliest))
+    return Result(
+        export_name=context.export_name,
+        export_sha256=context.export_sha256,
+        plan_name=plan.name,
+        plan_sha256=context.plan_sha256,
+        run_k=context.run_k,
+        run_n=context.run_n,
+        notices=tuple(notices),
+        characteristics=tuple(results),
+        versions=tuple(sorted(versions.items())),
+    )
+
+
+def earliest_date(measurements: MeasurementSet) -> dt.date | None:
+    """Return the date of the earliest measurement, or None where the export has no times."""
+    dates = [m.time[:10] for m in measurements.measurements if m.time]
+    return min((dt.date.fromisoformat(d) for d in dates), default=None)
+
+
+def _require_reference(
+    measurements: MeasurementSet, plan: ComparisonPlan, characteristic: CharacteristicPlan, labels: list[str]
+) -> None:
+    if plan.reference is None or plan.reference in labels or not labels:
+        return
+    raise ExportRefusedError(
+        "reference_missing",
+        file=measurements.export_name,
+        where=f"{characteristic.name}, {plan.groups} names",
+        found=f"{', '.join(labels[:8])}{' and others' if len(labels) > 8 else ''}.",
+        expected=f"The plan compares each with the reference {plan.reference}.",
+        next_step="Export the reference's results too, or correct the reference in the plan.",
+    )
+
+
+def _late_approval(plan: ComparisonPlan, earliest: dt.date | None) -> list[Notice]:
+    if plan.approved is None or earliest is None or plan.approved.on <= earliest:
+        return []
+    text = (
+        f"Set after the data: the plan was approved on {plan.approved.on.isoformat()}, "
+        f"the first measurement is of {earliest.isoformat()}."
+    )
+    return [Notice(code="plan_set_after_data", cells=(), text=text)]
+
+
+def _no_values(measurements: MeasurementSet, plan: ComparisonPlan) -> ExportRefusedError:
+    names = ", ".join(c.name for c in plan.characteristics)
+    return ExportRefusedError(
+        "no_data_rows",
+        file=measurements.export_name,
+        where=f"layout {measurements.layout_name}",
+        found="No value was found.",
+        expected=f"Values of {names}.",
+        next_step="Check that the export is complete and that first_row in the layout fits.",
+    )

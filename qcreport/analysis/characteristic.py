@@ -1,0 +1,140 @@
+"""Everything about one characteristic, from its groups to its frozen result."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from qcreport.analysis.comparable import Comparable
+from qcreport.analysis.flags import flag
+from qcreport.analysis.outcome import Outcome, Question, decide, sensitivity
+from qcreport.analysis.result import (
+    CharacteristicResult,
+    GroupResult,
+    NotCompared,
+    Overall,
+)
+from qcreport.analysis.screen import Group
+from qcreport.errors import StatisticsError
+from qcreport.measurements import Notice
+from qcreport.plan.model import POOLED
+from qcreport.rules.facts import SIMILAR
+from qcreport.stats.equivalence import most_serious
+from qcreport.stats.one_way import AnovaResult, anova, supported_digits, welch
+from qcreport.stats.summary import summarize
+
+NOT_COMPARED = "not_compared"
+_CLEARED = frozenset({"within_margin", "equivalent"})
+
+
+def characteristic_result(
+    groups: Sequence[Group], question: Question
+) -> tuple[CharacteristicResult, tuple[Notice, ...]]:
+    """Return the result of one characteristic and the notices its computation adds."""
+    outcome = decide(groups, question)
+    comparison, c = outcome.comparison, question.characteristic
+    table = _variance_table(outcome.ready)
+    result = CharacteristicResult(
+        name=c.name,
+        title=c.title,
+        unit=c.unit,
+        alpha=question.alpha,
+        margin=(c.margin_below, c.margin_above),
+        scale=question.plan.scale,
+        direction=c.direction,
+        lower_limit=c.lower_limit,
+        upper_limit=c.upper_limit,
+        independent_unit=question.plan.independent_unit,
+        reference=question.plan.reference,
+        groups=tuple(_group_result(g) for g in groups if g.n > 0),
+        not_compared=_not_compared(outcome),
+        checks=outcome.gathered.checks,
+        facts=outcome.gathered.evidence,
+        rule=outcome.choice.rule,
+        trace=outcome.choice.trace,
+        overall=_overall(outcome, table),
+        analysis_of_variance=table,
+        procedure=outcome.procedure,
+        critical_value=None if comparison is None else comparison.posthoc.critical_value,
+        hsd=None if comparison is None else comparison.posthoc.hsd,
+        all_within_margin=None if comparison is None else comparison.all_within_margin,
+        pairs=() if comparison is None else comparison.pairs,
+        sensitivity=sensitivity(outcome, question),
+        flagged=flag(groups, outcome, question),
+        answer=_answer(outcome),
+    )
+    return result, () if comparison is None else comparison.notices
+
+
+def _answer(outcome: Outcome) -> str:
+    """Return the most serious pair's answer; what was left uncompared keeps anything from being cleared."""
+    if outcome.comparison is None or not outcome.comparison.pairs:
+        return NOT_COMPARED
+    worst = most_serious([p.answer for p in outcome.comparison.pairs])
+    if outcome.ready.not_compared and worst in _CLEARED:
+        return "not_settled"
+    return worst
+
+
+def _not_compared(outcome: Outcome) -> tuple[NotCompared, ...]:
+    if outcome.comparison is not None:
+        return outcome.ready.not_compared
+    reason = outcome.choice.rule.reason if outcome.choice.procedure == "none" else outcome.why_none
+    rest = tuple(NotCompared(label=g.label, n=g.n, reason=reason) for g in outcome.ready.groups)
+    return (*outcome.ready.not_compared, *rest)
+
+
+def _group_result(group: Group) -> GroupResult:
+    summary = None if group.censored else summarize(group.label, group.values, allow_single=True)
+    return GroupResult(
+        label=group.label,
+        n=group.n,
+        n_readings=group.n_readings,
+        mean=None if summary is None else summary.mean,
+        sd=None if summary is None or group.n < 2 else summary.variance**0.5,
+        minimum=None if summary is None else summary.minimum,
+        maximum=None if summary is None else summary.maximum,
+        median=None if summary is None else summary.median,
+        censored=group.censored,
+        missing=group.missing,
+        cells=tuple(cell for u in group.units for cell in u.cells),
+        units=group.units,
+    )
+
+
+def _variance_table(ready: Comparable) -> Overall | None:
+    if len(ready.groups) < 2 or not ready.varies or ready.censored:
+        return None
+    try:
+        return _as_overall(anova(ready.summaries), supported_digits(ready.summaries), pooled=True)
+    except StatisticsError:
+        return None
+
+
+def _overall(outcome: Outcome, table: Overall | None) -> Overall | None:
+    """Return the overall test that goes with the procedure and the spread fact; never a gate."""
+    if table is None:
+        return None
+    if outcome.procedure in POOLED or _similar(outcome):
+        return table
+    try:
+        return _as_overall(welch(outcome.ready.summaries), table.supported_digits, pooled=False)
+    except StatisticsError:
+        return None
+
+
+def _similar(outcome: Outcome) -> bool:
+    return outcome.gathered.facts.spread == SIMILAR
+
+
+def _as_overall(result: AnovaResult, digits: int, *, pooled: bool) -> Overall:
+    return Overall(
+        name=result.procedure,
+        statistic=result.statistic,
+        df=(result.df_between, result.df_within),
+        p=result.p,
+        ms_within=result.ms_within if pooled else None,
+        ms_between=result.ms_between if pooled else None,
+        ss_within=result.ss_within if pooled else None,
+        ss_between=result.ss_between if pooled else None,
+        supported_digits=digits,
+    )

@@ -1,0 +1,192 @@
+"""The chosen procedure run on the comparable groups, its answers read off against 0 and the margin."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import cast
+
+from qcreport.analysis.comparable import Comparable
+from qcreport.analysis.procedures import on_means, run_procedure
+from qcreport.analysis.result import PairResult
+from qcreport.measurements import Notice
+from qcreport.plan.model import POOLED, CharacteristicPlan, Scale
+from qcreport.stats.comparison import PairwiseComparison, PosthocResult
+from qcreport.stats.detectable import Procedure, detectable_difference, sample_size_for
+from qcreport.stats.equivalence import all_within_margin, judge
+from qcreport.stats.summary import GroupSummary, with_floored_variance
+from qcreport.stats.unequal import welch_pair
+
+Margin = tuple[float | None, float | None]
+"""Below (negative) and above (positive), on the scale of the comparison."""
+
+OPEN_ANSWERS = frozenset({"different", "not_settled"})
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Comparison:
+    """What a procedure says about every pair."""
+
+    posthoc: PosthocResult
+    """The procedure's own numbers, on the scale of the comparison."""
+    pairs: tuple[PairResult, ...]
+    """The pairs as reported."""
+    all_within_margin: bool | None
+    """Two one-sided tests for every pair; None without a margin."""
+    notices: tuple[Notice, ...]
+    """What had to be assumed to compute."""
+
+
+def compare(
+    procedure: str,
+    ready: Comparable,
+    characteristic: CharacteristicPlan,
+    *,
+    alpha: float,
+    scale: Scale,
+) -> Comparison | None:
+    """Return every pair's numbers and answer; None for a procedure not based on means.
+
+    Raises
+    ------
+    StatisticsError
+        Where the procedure cannot answer for these groups.
+    """
+    if not on_means(procedure):
+        return None
+    summaries: tuple[GroupSummary, ...] = ready.summaries
+    notices: tuple[Notice, ...] = ()
+    if procedure not in POOLED:
+        summaries, notices = _floored(ready, scale)
+    posthoc = run_procedure(
+        procedure,
+        summaries,
+        alpha=alpha,
+        reference=ready.reference,
+        direction=characteristic.direction,
+    )
+    margin = margin_on_scale(characteristic, scale)
+    by_label = {s.label: s for s in summaries}
+    needed = _Needed(procedure=procedure, n_groups=len(summaries), alpha=alpha, margin=margin)
+    pairs = tuple(_pair(c, by_label, margin, scale, needed) for c in posthoc.comparisons)
+    return Comparison(
+        posthoc=posthoc,
+        pairs=pairs,
+        all_within_margin=_all_within(posthoc, by_label, margin, alpha),
+        notices=notices,
+    )
+
+
+def margin_on_scale(characteristic: CharacteristicPlan, scale: Scale) -> Margin:
+    """Return the margin on the scale of the comparison: logarithms of the ratios on the log scale."""
+    below, above = characteristic.margin_below, characteristic.margin_above
+    if scale is Scale.LOG:
+        return (
+            None if below is None else math.log(below),
+            None if above is None else math.log(above),
+        )
+    return below, above
+
+
+def _floored(ready: Comparable, scale: Scale) -> tuple[tuple[GroupSummary, ...], tuple[Notice, ...]]:
+    """Give groups without any scatter the variance of rounding, resolution²/12, and say so."""
+    summaries: list[GroupSummary] = []
+    notices: list[Notice] = []
+    for group, summary, values in zip(ready.groups, ready.summaries, ready.values, strict=True):
+        if min(values) != max(values):
+            summaries.append(summary)
+            continue
+        step = 10.0 ** -max(u.decimals for u in group.units)
+        resolution = step / abs(group.units[0].value) if scale is Scale.LOG else step
+        summaries.append(with_floored_variance((summary,), resolution * resolution / 12.0)[0])
+        notices.append(
+            Notice(
+                code="spread_floored",
+                cells=tuple(u.cells[0] for u in group.units),
+                text=f"All values of {group.label} are equal. Its scatter is taken as that of rounding to "
+                f"{step:g} (variance {step:g}²/12), since none at all cannot be true of a measurement.",
+            )
+        )
+    return tuple(summaries), tuple(notices)
+
+
+def _df(comparison: PairwiseComparison, by_label: dict[str, GroupSummary]) -> float:
+    """Return the pair's degrees of freedom; Welch–Satterthwaite where the procedure itself has none."""
+    if comparison.df is not None:
+        return comparison.df
+    return welch_pair(by_label[comparison.first], by_label[comparison.second]).df
+
+
+def _all_within(
+    posthoc: PosthocResult, by_label: dict[str, GroupSummary], margin: Margin, alpha: float
+) -> bool | None:
+    """Return whether two one-sided tests put every pair within the margin; None where none is set."""
+    if margin == (None, None):
+        return None
+    own_df = [_df(c, by_label) for c in posthoc.comparisons]
+    within = all_within_margin(
+        posthoc.comparisons, alpha=alpha, margin_below=margin[0], margin_above=margin[1], own_df=own_df
+    )
+    return within.all_within
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Needed:
+    """What decides how many results a group would settle an open pair."""
+
+    procedure: str
+    n_groups: int
+    alpha: float
+    margin: Margin
+
+    def results_a_group(self, first: GroupSummary, second: GroupSummary) -> int | None:
+        sizes = [abs(m) for m in self.margin if m is not None]
+        if not sizes:
+            return None
+        return sample_size_for(
+            procedure=cast(Procedure, self.procedure),
+            n_groups=self.n_groups,
+            variance=0.5 * (first.variance + second.variance),
+            margin=min(sizes),
+            alpha=self.alpha,
+        )
+
+
+def _pair(
+    comparison: PairwiseComparison,
+    by_label: dict[str, GroupSummary],
+    margin: Margin,
+    scale: Scale,
+    needed: _Needed,
+) -> PairResult:
+    answer = judge(comparison.lower, comparison.upper, margin[0], margin[1])
+    detectable = None
+    if comparison.se is not None and comparison.critical_value is not None:
+        detectable = detectable_difference(
+            comparison.se, _df(comparison, by_label), comparison.critical_value
+        )
+    settled_by = None
+    if answer in OPEN_ANSWERS:
+        settled_by = needed.results_a_group(by_label[comparison.first], by_label[comparison.second])
+    return PairResult(
+        first=comparison.first,
+        second=comparison.second,
+        difference=_back(comparison.difference, scale) or 0.0,
+        se=comparison.se,
+        statistic=comparison.statistic,
+        df=comparison.df,
+        critical_value=comparison.critical_value,
+        p=comparison.p,
+        lower=_back(comparison.lower, scale),
+        upper=_back(comparison.upper, scale),
+        detectable=_back(detectable, scale),
+        needed_n=settled_by,
+        answer=answer,
+    )
+
+
+def _back(value: float | None, scale: Scale) -> float | None:
+    """Return a difference as reported: a ratio of geometric means on the log scale."""
+    if value is None or scale is not Scale.LOG:
+        return value
+    return math.exp(value)

@@ -1,0 +1,63 @@
+"""Writing a file so that it is either whole under its name or not there at all."""
+
+from __future__ import annotations
+
+import os
+import secrets
+from pathlib import Path
+
+from qcreport.errors import EnvironmentFailedError
+
+
+def write_durably(path: Path, data: bytes, *, mode: int = 0o644) -> None:
+    """Write `data` under `path` by temporary file, fsync, rename, and fsync of the folder.
+
+    Raises
+    ------
+    EnvironmentFailedError
+        Where the disk is full, the folder missing or not writable.
+    """
+    temporary = path.with_name(f".{path.name[:100]}.{secrets.token_hex(8)}.tmp")
+    try:
+        _write_new(temporary, data, mode)
+        temporary.replace(path)
+        sync_folder(path.parent)
+    except OSError as error:
+        raise failed(f"{path} could not be written", error) from error
+    finally:
+        temporary.unlink(missing_ok=True)
+
+
+def _write_new(path: Path, data: bytes, mode: int) -> None:
+    descriptor = os.open(path, os.O_WRONLY | os.O_CREAT | os.O_EXCL | os.O_NOFOLLOW | os.O_CLOEXEC, mode)
+    with os.fdopen(descriptor, "wb") as stream:
+        stream.write(data)
+        stream.flush()
+        os.fsync(stream.fileno())
+
+
+def make_folder(path: Path, *, mode: int = 0o755) -> None:
+    """Make a folder and its parents, durable before this returns."""
+    if path.is_dir():
+        return
+    make_folder(path.parent, mode=mode)
+    try:
+        path.mkdir(mode=mode, exist_ok=True)
+        sync_folder(path.parent)
+    except OSError as error:
+        raise failed(f"The folder {path} could not be made", error) from error
+
+
+def sync_folder(path: Path) -> None:
+    """Make renames in a folder durable."""
+    descriptor = os.open(path, os.O_RDONLY | os.O_DIRECTORY | os.O_CLOEXEC)
+    try:
+        os.fsync(descriptor)
+    finally:
+        os.close(descriptor)
+
+
+def failed(what: str, error: OSError) -> EnvironmentFailedError:
+    """Return the error that tells people what the system refused."""
+    reason = error.strerror or str(error)
+    return EnvironmentFailedError(f"{what}: {reason}. Mend that and try again; nothing is lost.")

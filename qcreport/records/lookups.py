@@ -1,0 +1,67 @@
+"""What can be asked of the records without writing to them."""
+
+from __future__ import annotations
+
+from qcreport.measurements import MeasurementSet
+from qcreport.records import ledger, listing, runs, store
+from qcreport.records.archive import Archive
+from qcreport.records.chain import Entry, Head, Kind
+from qcreport.records.database import Database
+from qcreport.records.listing import OpenRefusal, ReportRow
+from qcreport.records.run import Run
+from qcreport.records.store import Survey
+
+
+class Lookups:
+    """Questions to the records of one site, each answered from one unchanging state."""
+
+    def __init__(self, *, database: Database, archive: Archive) -> None:
+        self.database = database
+        self.archive = archive
+
+    def head(self) -> Head:
+        """Return the ledger's head."""
+        with self.database.read() as connection:
+            return ledger.head(connection)
+
+    def entries(
+        self, *, kind: Kind | None = None, since: str | None = None, until: str | None = None
+    ) -> tuple[Entry, ...]:
+        """Return ledger entries in order: of one kind, with `since` <= time < `until` (UTC, ISO 8601)."""
+        with self.database.read() as connection:
+            return tuple(ledger.entries(connection, kind=kind, since=since, until=until))
+
+    def run_of_key(self, key: str) -> Run | None:
+        """Return the run of a run key."""
+        with self.database.read() as connection:
+            return runs.by_key(connection, key)
+
+    def run_of_number(self, number: str) -> Run | None:
+        """Return the run of a report number."""
+        with self.database.read() as connection:
+            return runs.by_number(connection, number)
+
+    def run_of_report(self, report_sha256: str) -> Run | None:
+        """Return the run whose sealed report has this digest."""
+        with self.database.read() as connection:
+            return runs.by_report(connection, report_sha256)
+
+    def runs_of_export(self, export_sha256: str, plan_name: str | None = None) -> tuple[Run, ...]:
+        """Return the runs over an export, by one plan or by all, in order of number."""
+        with self.database.read() as connection:
+            return runs.of_export(connection, export_sha256, plan_name)
+
+    def survey(self, measurements: MeasurementSet) -> Survey:
+        """Return what of an export is new, known or changed."""
+        with self.database.read() as connection:
+            return store.survey(connection, measurements)
+
+    def reports(self) -> tuple[ReportRow, ...]:
+        """Return one row a run, in order of number."""
+        with self.database.read() as connection:
+            return listing.reports(connection)
+
+    def open_refusals(self) -> tuple[OpenRefusal, ...]:
+        """Return the refusals that nobody has mended yet, oldest first."""
+        with self.database.read() as connection:
+            return listing.open_refusals(connection)

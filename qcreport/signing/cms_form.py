@@ -1,0 +1,60 @@
+"""Whether the bytes that hold a signature say exactly one thing.
+
+A signature does not cover the place where it is written. Whoever changes unused bytes there changes the file
+without breaking the signature, so what is not needed must be empty and what is said twice must agree.
+"""
+
+from __future__ import annotations
+
+import binascii
+from collections.abc import Iterator
+from typing import TYPE_CHECKING
+
+from qcreport.signing.seal import SEAL_FIELD
+
+if TYPE_CHECKING:
+    from pyhanko.sign.validation.pdf_embedded import EmbeddedPdfSignature
+
+
+def oddities(pdf: bytes, signature: EmbeddedPdfSignature) -> tuple[str, ...]:
+    """Return what is odd about the place that holds a signature, one clause each."""
+    return tuple(_oddities(pdf, signature))
+
+
+def _oddities(pdf: bytes, signature: EmbeddedPdfSignature) -> Iterator[str]:
+    content: bytes = signature.pkcs7_content
+    first = int(signature.byte_range[1])
+    written = pdf[first : first + 2 * len(content) + 2]
+    digits = binascii.hexlify(content)
+    if written not in (b"<" + digits + b">", b"<" + digits.upper() + b">"):
+        yield "the place that holds the signature was changed"
+    used = _der_length(content)
+    if used is None or content[used:].strip(b"\0"):
+        yield "the unused room beside the signature is not empty"
+    if signature.field_name == SEAL_FIELD:
+        yield from _disagreements(signature)
+
+
+def _der_length(content: bytes) -> int | None:
+    """Return the length of the outermost DER element, or None where it has no definite length."""
+    if len(content) < 2 or content[1] == 0x80:
+        return None
+    if content[1] < 0x80:
+        return 2 + content[1]
+    octets = content[1] & 0x7F
+    return 2 + octets + int.from_bytes(content[2 : 2 + octets], "big")
+
+
+def _disagreements(signature: EmbeddedPdfSignature) -> Iterator[str]:
+    """Yield where a seal differs from the one way in which we write it; others' programs write otherwise."""
+    data, signer = signature.signed_data, signature.signer_info
+    digests = [algorithm.dump() for algorithm in data["digest_algorithms"]]
+    own = signer["digest_algorithm"]
+    if digests != [own.dump()] or own["parameters"].native is not None:
+        yield "the signature names its digest in two ways"
+    # RFC 5652, 5.1 and 5.3: the versions follow from what the signature holds.
+    expected = "v1" if signer["sid"].name == "issuer_and_serial_number" else "v3"
+    if signer["version"].native != expected or data["version"].native != expected:
+        yield "the signature has a version that does not fit its form"
+    if signer.dump(force=True) != signer.dump():
+        yield "the signature is not written in the one form that is allowed"

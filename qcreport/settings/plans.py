@@ -9,8 +9,7 @@ from qcreport.errors import ConfigError, EnvironmentFailedError, Fault
 from qcreport.plan import ComparisonPlan, parse_plan
 from qcreport.rules import RulesTable, parse_rules
 from qcreport.settings.site import Site
-from qcreport.workbook.layout import Layout
-from qcreport.workbook.layout_file import parse_layout
+from qcreport.workbook.layout import Layout, parse_layout
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

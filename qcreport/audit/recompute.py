@@ -1,0 +1,40 @@
+"""The result computed anew from what a report carries, along the same stages as the first time."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from qcreport.audit.evidence import Evidence
+from qcreport.errors import NotOurReportError
+
+
+def recompute_result(evidence: Evidence) -> dict[str, Any]:
+    """Return `result.json` as this installation computes it from the attachments.
+
+    The export is read in the reader child, as a dropped one is.
+
+    Raises
+    ------
+    QcReportError
+        An attachment cannot be read, or the analysis cannot answer.
+    """
+    from qcreport.analysis import analyse
+    from qcreport.plan import parse_plan
+    from qcreport.rules import parse_rules
+    from qcreport.workbook.limits import Limits
+    from qcreport.workbook.read_in_child import read_in_child
+
+    export, context = evidence.export_name, evidence.context
+    if export is None or context is None:
+        raise NotOurReportError("The report does not carry what its result was computed from.")
+    files = evidence.files
+    plan = parse_plan(files["plan.toml"], "plan.toml")
+    rules = parse_rules(files["rules.toml"], "rules.toml")
+    measurements = read_in_child(
+        files[export],
+        name=context.export_name,
+        layout_bytes=files["layout.toml"],
+        layout_file="layout.toml",
+        limits=Limits(),
+    )
+    return analyse(measurements, plan, rules, context).to_json()

@@ -1,0 +1,123 @@
+"""`qcreport compare EXPORT`."""
+
+from __future__ import annotations
+
+import argparse
+import getpass
+import json
+import secrets
+import sys
+from pathlib import Path
+
+from qcreport.canonical import sha256_hex
+from qcreport.cli.now import now
+from qcreport.cli.run import REFUSED, print_error
+from qcreport.cli.words import outcome_lines
+from qcreport.errors import EnvironmentFailedError, ExportRefusedError, UsageError
+from qcreport.intake.matching import matching_plans
+from qcreport.pipeline.opened import Opened, opened
+from qcreport.pipeline.outcome import Outcome, Received, Reported
+from qcreport.records.files import make_folder, write_durably
+from qcreport.settings import PlanSettings, Site, find_plan, load_plans, load_site
+from qcreport.workbook.outcome import layout_try_json
+
+
+def run(arguments: argparse.Namespace) -> int:
+    """Compare one export; it stays where it is, refused or not."""
+    site = load_site(Path(arguments.site))
+    received = _received(Path(arguments.export), site)
+    with opened(site, now, workers=1, seals=not arguments.no_report, progress=_progress) as work:
+        work.pipeline.receive(received)
+        try:
+            plans = _plans(arguments, site, received.name)
+            outcomes = [_answer(work, received, settings, arguments) for settings in plans]
+        except ExportRefusedError as error:
+            return _refused(work, received, error, arguments)
+    if arguments.out is not None:
+        for outcome in outcomes:
+            _write_out(Path(arguments.out), outcome, several=len(outcomes) > 1)
+    if arguments.json:
+        for outcome in outcomes:
+            sys.stdout.write(outcome.result.decode("utf-8"))
+    else:
+        for outcome in outcomes:
+            print("\n".join(outcome_lines(outcome)))
+    return 0
+
+
+def _received(path: Path, site: Site) -> Received:
+    """Read the export once, within the site's limit."""
+    limit = site.limits.max_file_bytes
+    try:
+        with path.open("rb") as stream:
+            data = stream.read(limit + 1)
+    except (FileNotFoundError, IsADirectoryError) as error:
+        raise UsageError(f"{path}: {error.strerror}. Name an export.", file=str(path)) from None
+    except OSError as error:
+        raise EnvironmentFailedError(f"{path} cannot be read: {error.strerror}.", file=str(path)) from None
+    return Received(
+        name=path.name,
+        data=data,
+        sha256=sha256_hex(data),
+        claim=f"compare-{secrets.token_hex(8)}",
+        actor=_account(),
+    )
+
+
+def _account() -> str:
+    try:
+        return getpass.getuser()
+    except (OSError, KeyError):
+        return "unknown account"
+
+
+def _plans(arguments: argparse.Namespace, site: Site, name: str) -> tuple[PlanSettings, ...]:
+    if arguments.plan is not None:
+        return (find_plan(site, arguments.plan),)
+    plans = matching_plans(name, load_plans(site))
+    if len(plans) > 1 and arguments.json:
+        names = ", ".join(p.plan.name for p in plans)
+        raise UsageError(f"{len(plans)} plans fit {name}: {names}. With --json name one: --plan NAME")
+    return plans
+
+
+def _answer(
+    work: Opened, received: Received, settings: PlanSettings, arguments: argparse.Namespace
+) -> Outcome:
+    try:
+        return work.pipeline.answer(
+            received, settings, reason=arguments.reason or "", report=not arguments.no_report
+        )
+    except ExportRefusedError as error:
+        if error.code == "already_read":
+            raise UsageError(f'{error.found} {error.expected} Give --reason "…".') from None
+        raise
+
+
+def _refused(
+    work: Opened, received: Received, error: ExportRefusedError, arguments: argparse.Namespace
+) -> int:
+    work.records.refuse(received.claim, error, export_sha256=received.sha256, folder="", actor=received.actor)
+    if arguments.json:
+        print(json.dumps(layout_try_json(error), ensure_ascii=False, indent=1))
+    print_error(error, arguments)
+    return REFUSED
+
+
+def _write_out(folder: Path, outcome: Outcome, *, several: bool) -> None:
+    make_folder(folder)
+    name = f"{outcome.plan_name}.result.json" if several else "result.json"
+    write_durably(folder / name, outcome.result)
+    if isinstance(outcome, Reported):
+        try:
+            report = outcome.path.read_bytes()
+        except OSError as error:
+            raise EnvironmentFailedError(
+                f"{outcome.path} cannot be read: {error.strerror}.", file=str(outcome.path)
+            ) from None
+        write_durably(folder / f"{outcome.number}.pdf", report)
+
+
+def _progress(text: str) -> None:
+    if sys.stderr.isatty():
+        print(f"… {text}", file=sys.stderr)

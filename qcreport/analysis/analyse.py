@@ -3,8 +3,12 @@
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Mapping
+from typing import Final
 
+import numpy
+import scipy
+
+import qcreport
 from qcreport.analysis.characteristic import characteristic_result
 from qcreport.analysis.context import Context
 from qcreport.analysis.outcome import Question
@@ -15,13 +19,19 @@ from qcreport.measurements import MeasurementSet, Notice
 from qcreport.plan.model import CharacteristicPlan, ComparisonPlan, Family
 from qcreport.rules import RulesTable
 
+VERSIONS: Final = (
+    ("numpy", numpy.__version__),
+    ("qcreport", qcreport.__version__),
+    ("scipy", scipy.__version__),
+)
+"""(package, version) of what decides the numbers."""
+
 
 def analyse(
     measurements: MeasurementSet,
     plan: ComparisonPlan,
     rules: RulesTable,
     context: Context,
-    versions: Mapping[str, str],
 ) -> Result:
     """Compare the groups of every characteristic in the plan.
 
@@ -33,16 +43,13 @@ def analyse(
         What is compared, and the decision table that chooses how.
     context
         Facts of the moment; the export's name, the plan's digest and run k of n enter the result.
-    versions
-        (package, version) of what computes, for the record.
 
     Raises
     ------
     ExportRefusedError
         `reference_missing`, `unit_conflict`, `group_missing`, `no_data_rows`.
     """
-    if not measurements.measurements:
-        raise _no_values(measurements, plan)
+    require_answerable(measurements, plan)
     alpha = plan.alpha
     if plan.family is Family.EXPORT:
         alpha /= len(plan.characteristics)
@@ -50,7 +57,6 @@ def analyse(
     results, notices = [], list(measurements.notices)
     for characteristic in plan.characteristics:
         groups = groups_of(measurements, plan, characteristic)
-        _require_reference(measurements, plan, characteristic, [g.label for g in groups])
         question = Question(
             plan=plan, characteristic=characteristic, rules=rules, alpha=alpha, earliest=earliest
         )
@@ -67,8 +73,20 @@ def analyse(
         run_n=context.run_n,
         notices=tuple(notices),
         characteristics=tuple(results),
-        versions=tuple(sorted(versions.items())),
+        versions=VERSIONS,
     )
+
+
+def require_answerable(measurements: MeasurementSet, plan: ComparisonPlan) -> None:
+    """Raise ExportRefusedError where the export cannot be compared by the plan at all.
+
+    Asked before a report number is reserved, so that a refusal uses none up.
+    """
+    if not measurements.measurements:
+        raise _no_values(measurements, plan)
+    for characteristic in plan.characteristics:
+        groups = groups_of(measurements, plan, characteristic)
+        _require_reference(measurements, plan, characteristic, [g.label for g in groups])
 
 
 def earliest_date(measurements: MeasurementSet) -> dt.date | None:

@@ -14,7 +14,7 @@ from qcreport.cli.now import now
 from qcreport.cli.run import REFUSED, print_error
 from qcreport.cli.words import outcome_lines
 from qcreport.errors import EnvironmentFailedError, ExportRefusedError, UsageError
-from qcreport.intake.matching import matching_plans
+from qcreport.pipeline.choose_plans import fitting_plans
 from qcreport.pipeline.opened import Opened, opened
 from qcreport.pipeline.outcome import Outcome, Received, Reported
 from qcreport.records.files import make_folder, write_durably
@@ -74,7 +74,7 @@ def _account() -> str:
 def _plans(arguments: argparse.Namespace, site: Site, name: str) -> tuple[PlanSettings, ...]:
     if arguments.plan is not None:
         return (find_plan(site, arguments.plan),)
-    plans = matching_plans(name, load_plans(site))
+    plans = fitting_plans(name, load_plans(site))
     if len(plans) > 1 and arguments.json:
         names = ", ".join(p.plan.name for p in plans)
         raise UsageError(f"{len(plans)} plans fit {name}: {names}. With --json name one: --plan NAME")

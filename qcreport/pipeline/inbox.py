@@ -1,0 +1,106 @@
+"""One claimed export from the inbox: answered by every plan that fits, or refused with the reason."""
+
+from __future__ import annotations
+
+import datetime as dt
+from collections.abc import Callable
+from dataclasses import dataclass
+from pathlib import Path
+
+from qcreport.errors import ExportRefusedError
+from qcreport.intake.exports import ClaimedExport
+from qcreport.intake.refusals import put_refused
+from qcreport.pipeline.choose_plans import fitting_plans
+from qcreport.pipeline.outcome import Outcome, Received
+from qcreport.pipeline.pipeline import Pipeline
+from qcreport.records.facade import Records
+from qcreport.settings.plans import PlanSettings
+from qcreport.settings.site import Site
+
+ACTOR = "service"
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Refused:
+    """An export that was refused by a plan, or before any plan was asked."""
+
+    error: ExportRefusedError
+    """Why."""
+    folder: Path
+    """Where original and reason are."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Handled:
+    """What became of one claimed export."""
+
+    name: str
+    """File name as dropped."""
+    outcomes: tuple[Outcome, ...]
+    """Reports."""
+    refusals: tuple[Refused, ...]
+    """Refusals; both may be there where several plans fit."""
+
+
+class InboxHandler:
+    """Answers claimed exports; plans are read anew for each, so that a mended one counts at once."""
+
+    def __init__(
+        self,
+        *,
+        site: Site,
+        records: Records,
+        pipeline: Pipeline,
+        load_plans: Callable[[Site], tuple[PlanSettings, ...]],
+    ) -> None:
+        self._site = site
+        self._records = records
+        self._pipeline = pipeline
+        self._load_plans = load_plans
+
+    def handle(self, export: ClaimedExport) -> Handled:
+        """Answer or refuse one export; safe to repeat after a kill at any instant."""
+        name = export.claim.name
+        if export.data is None or export.sha256 is None or export.refusal is not None:
+            error = export.refusal or _unreadable(name)
+            return Handled(name=name, outcomes=(), refusals=(self._refuse(export, error, ""),))
+        received = Received(
+            name=name, data=export.data, sha256=export.sha256, claim=export.claim.id, actor=ACTOR
+        )
+        self._pipeline.receive(received)
+        try:
+            plans = fitting_plans(name, self._load_plans(self._site))
+        except ExportRefusedError as error:
+            return Handled(name=name, outcomes=(), refusals=(self._refuse(export, error, ""),))
+        outcomes: list[Outcome] = []
+        refusals: list[Refused] = []
+        for settings in plans:
+            try:
+                outcomes.append(self._pipeline.answer(received, settings))
+            except ExportRefusedError as error:
+                refusals.append(self._refuse(export, error, settings.plan.name))
+        return Handled(name=name, outcomes=tuple(outcomes), refusals=tuple(refusals))
+
+    def _refuse(self, export: ClaimedExport, error: ExportRefusedError, plan_name: str) -> Refused:
+        day = dt.date.fromisoformat(export.claim.claimed_at[:10])
+        folder = put_refused(self._site.folders.refused, export, error, day)
+        self._records.refuse(
+            export.claim.id,
+            error,
+            export_sha256=export.sha256,
+            folder=folder.name,
+            actor=ACTOR,
+            plan_name=plan_name,
+        )
+        return Refused(error=error, folder=folder)
+
+
+def _unreadable(name: str) -> ExportRefusedError:
+    return ExportRefusedError(
+        "damaged_or_incomplete",
+        file=name,
+        where="the whole file",
+        found="The file could not be read.",
+        expected="A complete export.",
+        next_step="Copy it again.",
+    )

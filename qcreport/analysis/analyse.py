@@ -16,7 +16,7 @@ from qcreport.analysis.result import Result
 from qcreport.analysis.screen import groups_of
 from qcreport.errors import ExportRefusedError
 from qcreport.measurements import MeasurementSet, Notice
-from qcreport.plan.model import CharacteristicPlan, ComparisonPlan, Family
+from qcreport.plan.model import CharacteristicPlan, ComparisonPlan, Direction, Family
 from qcreport.rules import RulesTable
 
 VERSIONS: Final = (
@@ -64,6 +64,7 @@ def analyse(
         results.append(result)
         notices.extend(added)
     notices.extend(_late_approval(plan, earliest))
+    notices.extend(_unused_directions(plan))
     return Result(
         export_name=context.export_name,
         export_sha256=context.export_sha256,
@@ -118,6 +119,18 @@ def _late_approval(plan: ComparisonPlan, earliest: dt.date | None) -> list[Notic
         f"the first measurement is of {earliest.isoformat()}."
     )
     return [Notice(code="plan_set_after_data", cells=(), text=text)]
+
+
+def _unused_directions(plan: ComparisonPlan) -> list[Notice]:
+    """Say where a one-sided direction cannot count: of every pair one member is lower anyway."""
+    sided = [c.name for c in plan.characteristics if c.direction is not Direction.BOTH]
+    if not sided or plan.reference is not None:
+        return []
+    text = (
+        f"The plan gives {', '.join(sided)} a one-sided direction, which needs a reference; every pair is "
+        "compared here, so the intervals are two-sided."
+    )
+    return [Notice(code="direction_not_used", cells=(), text=text)]
 
 
 def _no_values(measurements: MeasurementSet, plan: ComparisonPlan) -> ExportRefusedError:

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import datetime as dt
 import difflib
+import math
 import re
 import tomllib
 from collections.abc import Iterator, Mapping, Sequence
@@ -29,6 +30,16 @@ _KEY = re.compile(
     r"""^\s*((?:"[^"]*"|'[^']*'|[A-Za-z0-9_-]+)(?:\s*\.\s*(?:"[^"]*"|'[^']*'|[A-Za-z0-9_-]+))*)\s*="""
 )
 _PART = re.compile(r""""([^"]*)"|'([^']*)'|([A-Za-z0-9_-]+)""")
+_TOKENS: Final = {
+    "": re.compile(r"""\"{3}|'{3}|["'#\[\]{}]"""),
+    '"': re.compile(r'\\.|"'),
+    "'": re.compile("'"),
+    '"""': re.compile(r'\\.|"{3}'),
+    "'''": re.compile("'{3}"),
+}
+"""What ends or changes a value, by the quotes that are open."""
+_OPENING: Final = frozenset("[{")
+_CLOSING: Final = frozenset("]}")
 _SYNTAX_LINE = re.compile(r"\(at line (\d+), column \d+\)")
 
 
@@ -40,30 +51,59 @@ def _lines_of_keys(text: str) -> dict[Path, int]:
     """Return the line of each table header and key.
 
     TOML's standard parser gives no positions, so the text is scanned a second time, line by line, outside
-    multi-line strings. A key that is not found falls back to the line of its table.
+    strings and arrays that go over several lines. A key that is not found falls back to its table's line.
     """
     lines: dict[Path, int] = {}
     counts: dict[Path, int] = {}
     table: Path = ()
-    inside: str | None = None
-    for number, line in enumerate(text.splitlines(), start=1):
-        if inside is not None:
-            if inside in line:
-                inside = None
+    inside = _Inside()
+    for number, line in enumerate(text.split("\n"), start=1):
+        if inside.value:
+            inside.read(line)
             continue
         if header := _HEADER.match(line):
             names = _with_indexes(_parts(header.group(2)), counts)
             if header.group(1) == "[[":
+                lines.setdefault(names, number)
                 counts[names] = counts.get(names, -1) + 1
                 names = (*names, counts[names])
             table = names
             lines.setdefault(table, number)
         elif key := _KEY.match(line):
             lines.setdefault((*table, *_parts(key.group(1))), number)
-        for quotes in ('"""', "'''"):
-            if line.count(quotes) % 2 == 1:
-                inside = quotes
+            inside.read(line[key.end() :])
     return lines
+
+
+class _Inside:
+    """Whether the scan stands inside a value that goes on over the end of a line."""
+
+    def __init__(self) -> None:
+        self._quotes = ""
+        self._depth = 0
+
+    @property
+    def value(self) -> bool:
+        """Whether a string or an array is still open."""
+        return bool(self._quotes) or self._depth > 0
+
+    def read(self, line: str) -> None:
+        """Read a line, or the part of it that follows `key =`."""
+        position = 0
+        while found := _TOKENS[self._quotes].search(line, position):
+            mark, position = found.group(), found.end()
+            if mark == "#":
+                break
+            if mark in _OPENING:
+                self._depth += 1
+            elif mark in _CLOSING:
+                self._depth -= 1
+            elif mark == self._quotes:
+                self._quotes = ""
+            elif not mark.startswith("\\"):
+                self._quotes = mark
+        if len(self._quotes) == 1:  # never open at the end of a line in valid TOML
+            self._quotes = ""
 
 
 def _with_indexes(names: tuple[str, ...], counts: Mapping[Path, int]) -> Path:
@@ -95,10 +135,14 @@ class TomlSource:
         self.faults: list[Fault] = []
         try:
             data = tomllib.loads(text)
-        except tomllib.TOMLDecodeError as error:
+        except ValueError as error:  # TOMLDecodeError, or a whole number of thousands of digits
             found = _SYNTAX_LINE.search(str(error))
             line = int(found.group(1)) if found else None
+            if line is None and "at end of document" in str(error):
+                line = text.count("\n", 0, len(text.rstrip())) + 1
             raise ConfigError((Fault(text=f"not valid TOML: {error}", file=file, line=line),)) from None
+        except RecursionError:
+            raise ConfigError((Fault(text="nested too deeply", file=file),)) from None
         self._lines = _lines_of_keys(text)
         self.top = TableReader(self, data, ())
 
@@ -199,9 +243,13 @@ class TableReader:
         value = self._typed(key, default, (int, float), "a number", 0.0)
         if key not in self._data or not isinstance(value, (int, float)):
             return value
-        number = float(value)
-        if number - number != 0.0:
-            self.fault(key, f"must be a finite number, found {value!r}")
+        try:
+            number = float(value)
+        except OverflowError:  # a whole number beyond the range of double precision
+            number = math.inf
+        if not math.isfinite(number):
+            self.fault(key, "must be a finite number")
+            return 0.0
         if above is not None and not number > above:
             self.fault(key, f"must be greater than {above:g}, found {value!r}")
         if below is not None and not number < below:

@@ -15,6 +15,7 @@ if TYPE_CHECKING:
     from cryptography import x509
 
 _AFTER_END = re.compile(rb"[\r\n \t\0]*\Z")
+_LOST = "the signature in the field {} was taken out or replaced"
 SEALED_REVISION = 1
 """A report is rewritten in one revision and sealed in the next; the first has number 0."""
 
@@ -44,6 +45,7 @@ def inspect_pdf(pdf: bytes, *, roots: tuple[x509.Certificate, ...] | None, at: d
     """
     opened = open_sealed(pdf)
     with reading_pdf():
+        from qcreport.signing.history import lost_signatures
         from qcreport.signing.judge import judge
         from qcreport.signing.levels import pades_level
         from qcreport.signing.stamping import to_asn1
@@ -52,15 +54,15 @@ def inspect_pdf(pdf: bytes, *, roots: tuple[x509.Certificate, ...] | None, at: d
         judged = {id(s): judge(opened, s, known, at) for s in opened.signatures}
         seal = judged[id(opened.seal)]
         others = tuple(judged[id(s)] for s in opened.signatures if s is not opened.seal)
-        problems = tuple(_problems(opened, seal, others))
-        trailing = _trailing(opened)
+        lost = lost_signatures(opened)
+        changed = (_appended(opened) and not seal.later_changes_allowed) or _trailing(opened) or bool(lost)
         return PdfStatus(
             seal=seal,
             others=others,
             sealed_length=opened.sealed_length,
-            changed_after_seal=trailing or (_appended(opened) and not seal.later_changes_allowed),
+            changed_after_seal=changed,
             pades_level=pades_level(opened, seal, others),
-            problems=problems,
+            problems=(*_problems(opened, seal, others), *(_LOST.format(name) for name in lost)),
         )
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
+import warnings
 from collections.abc import Mapping
 from io import BytesIO
 
@@ -30,7 +31,9 @@ def rendered_report(attachments: Mapping[str, bytes]) -> bytes:
         )
         for name, data in sorted(attachments.items())
     ]
-    pdf = HTML(string=_PAGE).write_pdf(attachments=parts, pdf_variant="pdf/a-3a", pdf_tags=True)
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore", ResourceWarning)  # the layout library leaves its colour profile open
+        pdf = HTML(string=_PAGE).write_pdf(attachments=parts, pdf_variant="pdf/a-3a", pdf_tags=True)
     assert pdf is not None
     return with_fields(pdf)
 

@@ -20,7 +20,7 @@ from qcreport.plan.model import POOLED
 from qcreport.rules.facts import SIMILAR
 from qcreport.stats.equivalence import most_serious
 from qcreport.stats.one_way import AnovaResult, anova, supported_digits, welch
-from qcreport.stats.summary import summarize
+from qcreport.stats.summary import GroupSummary, summarize
 
 NOT_COMPARED = "not_compared"
 _CLEARED = frozenset({"within_margin", "equivalent"})
@@ -84,7 +84,7 @@ def _not_compared(outcome: Outcome) -> tuple[NotCompared, ...]:
 
 
 def _group_result(group: Group) -> GroupResult:
-    summary = None if group.censored else summarize(group.label, group.values, allow_single=True)
+    summary = _described(group)
     return GroupResult(
         label=group.label,
         n=group.n,
@@ -99,6 +99,16 @@ def _group_result(group: Group) -> GroupResult:
         cells=tuple(cell for u in group.units for cell in u.cells),
         units=group.units,
     )
+
+
+def _described(group: Group) -> GroupSummary | None:
+    """Return the summary of a group's numbers; None where a limit or double precision stands against it."""
+    if group.censored:
+        return None
+    try:
+        return summarize(group.label, group.values, allow_single=True)
+    except StatisticsError:
+        return None
 
 
 def _variance_table(ready: Comparable) -> Overall | None:

@@ -11,6 +11,9 @@ from qcreport.analysis.screen import Group
 from qcreport.plan.model import ComparisonPlan, Scale
 from qcreport.stats.summary import GroupSummary, summarize
 
+_LARGEST = 1e70
+"""Beyond this, or with less scatter than its inverse, squares and their ratios leave double precision."""
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Comparable:
@@ -78,6 +81,9 @@ def _why_not(group: Group, plan: ComparisonPlan) -> str:
         return f"The plan asks for at least {plan.smallest_group} {unit} in a group; this one has {had}."
     if plan.scale is Scale.LOG and any(u.censored is None and u.value <= 0.0 for u in group.units):
         return "It holds a value of 0 or below, which has no logarithm."
+    values = group.values
+    if max(map(abs, values)) > _LARGEST or 0.0 < max(values) - min(values) < 1.0 / _LARGEST:
+        return "Its values are too large, or too close to each other, to compute with; use another unit."
     return ""
 
 

@@ -139,15 +139,20 @@ class _Needed:
     alpha: float
     margin: Margin
 
-    def results_a_group(self, first: GroupSummary, second: GroupSummary) -> int | None:
-        sizes = [abs(m) for m in self.margin if m is not None]
-        if not sizes:
+    def results_a_group(self, difference: float, first: GroupSummary, second: GroupSummary) -> int | None:
+        """Return about how many results a group would put the whole interval on one side of the margin.
+
+        The difference and the scatter are taken as seen; None where the difference lies on the margin itself or
+        no margin is set.
+        """
+        distances = [abs(difference - m) for m in self.margin if m is not None]
+        if not distances or min(distances) == 0.0:
             return None
         return sample_size_for(
             procedure=cast(Procedure, self.procedure),
             n_groups=self.n_groups,
             variance=0.5 * (first.variance + second.variance),
-            margin=min(sizes),
+            margin=min(distances),
             alpha=self.alpha,
         )
 
@@ -167,7 +172,9 @@ def _pair(
         )
     settled_by = None
     if answer in OPEN_ANSWERS:
-        settled_by = needed.results_a_group(by_label[comparison.first], by_label[comparison.second])
+        settled_by = needed.results_a_group(
+            comparison.difference, by_label[comparison.first], by_label[comparison.second]
+        )
     return PairResult(
         first=comparison.first,
         second=comparison.second,

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
+import zoneinfo
 from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
@@ -59,30 +60,31 @@ class InboxHandler:
         self._load_plans = load_plans
 
     def handle(self, export: ClaimedExport) -> Handled:
-        """Answer or refuse one export; safe to repeat after a kill at any instant."""
-        name = export.claim.name
-        if export.data is None or export.sha256 is None or export.refusal is not None:
-            error = export.refusal or _unreadable(name)
-            return Handled(name=name, outcomes=(), refusals=(self._refuse(export, error, ""),))
+        """Answer or refuse one export; safe to repeat after a kill at any instant.
+
+        Raises
+        ------
+        ExportRefusedError
+            Where no plan fits its name, or the file was refused unread.
+        """
+        if export.data is None or export.sha256 is None:
+            raise export.refusal or _unreadable(export.name)
         received = Received(
-            name=name, data=export.data, sha256=export.sha256, claim=export.claim.id, actor=ACTOR
+            name=export.name, data=export.data, sha256=export.sha256, claim=export.claim.id, actor=ACTOR
         )
         self._pipeline.receive(received)
-        try:
-            plans = fitting_plans(name, self._load_plans(self._site))
-        except ExportRefusedError as error:
-            return Handled(name=name, outcomes=(), refusals=(self._refuse(export, error, ""),))
         outcomes: list[Outcome] = []
         refusals: list[Refused] = []
-        for settings in plans:
+        for settings in fitting_plans(export.name, self._load_plans(self._site)):
             try:
                 outcomes.append(self._pipeline.answer(received, settings))
             except ExportRefusedError as error:
                 refusals.append(self._refuse(export, error, settings.plan.name))
-        return Handled(name=name, outcomes=tuple(outcomes), refusals=tuple(refusals))
+        return Handled(name=export.name, outcomes=tuple(outcomes), refusals=tuple(refusals))
 
     def _refuse(self, export: ClaimedExport, error: ExportRefusedError, plan_name: str) -> Refused:
-        day = dt.date.fromisoformat(export.claim.claimed_at[:10])
+        claimed_at = dt.datetime.fromisoformat(export.claim.claimed_at)
+        day = claimed_at.astimezone(zoneinfo.ZoneInfo(self._site.time_zone)).date()
         folder = put_refused(self._site.folders.refused, export, error, day)
         self._records.refuse(
             export.claim.id,

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import multiprocessing
 import os
+import signal
 from collections.abc import Callable
 from concurrent.futures import ProcessPoolExecutor
 from concurrent.futures.process import BrokenProcessPool
@@ -75,7 +76,11 @@ class Workers:
 
 
 def _prepare_worker() -> None:
-    """Keep a worker to one thread and without the passphrase; runs before numpy is imported."""
+    """Keep a worker to one thread and without the passphrase; runs before numpy is imported.
+
+    An interrupt at the terminal reaches every process of the group; only the parent answers it.
+    """
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
     os.environ.pop(PASSPHRASE_VARIABLE, None)
     for name in _ONE_THREAD:
         os.environ[name] = "1"

@@ -1,0 +1,182 @@
+"""Reading an export by its layout: bytes and a layout in, measurements out."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from fnmatch import fnmatchcase
+
+from qcreport.canonical import sha256_hex
+from qcreport.errors import ExportRefusedError
+from qcreport.measurements import Measurement, MeasurementSet
+from qcreport.workbook.assembly import assemble
+from qcreport.workbook.cells import Book, Sheet
+from qcreport.workbook.columns import find_columns
+from qcreport.workbook.labels import trimmed
+from qcreport.workbook.layout_model import Layout, TableLayout
+from qcreport.workbook.limits import Limits
+from qcreport.workbook.notices import NoticeBook
+from qcreport.workbook.opening import open_export
+from qcreport.workbook.places import MAX_ROW
+from qcreport.workbook.readings import Reading
+from qcreport.workbook.refusals import quoted, refused
+from qcreport.workbook.sheets import choose_sheets, no_table_found
+from qcreport.workbook.stated_units import Stated, stated_in_table
+from qcreport.workbook.stray import WalkedTable, note_stray_cells
+from qcreport.workbook.walk import TableWalk
+
+
+def read_export(data: bytes, *, name: str, layout: Layout, limits: Limits | None = None) -> MeasurementSet:
+    """Return all that an export holds, as its layout says.
+
+    Parameters
+    ----------
+    data : bytes
+        The file as dropped.
+    name : str
+        Its name, without folders.
+    layout : Layout
+        How it is laid out.
+    limits : Limits or None
+        Bounds of the reading; the shipped ones where None.
+
+    Returns
+    -------
+    MeasurementSet
+        Measurements in export order, with notices.
+
+    Raises
+    ------
+    ExportRefusedError
+        With one of the documented codes, where anything could be read wrongly.
+    """
+    limits = limits if limits is not None else Limits()
+    try:
+        notices = NoticeBook(name)
+        book = open_export(data, name=name, text=layout.text, limits=limits)
+        measurements = _read_book(book, name, layout, limits, notices)
+        book.check_rest()
+    except ExportRefusedError as refusal:
+        refusal.file = name
+        raise
+    return MeasurementSet(
+        export_name=name,
+        export_sha256=sha256_hex(data),
+        layout_name=layout.name,
+        measurements=measurements,
+        notices=notices.notices(),
+    )
+
+
+def _read_book(
+    book: Book, name: str, layout: Layout, limits: Limits, notices: NoticeBook
+) -> tuple[Measurement, ...]:
+    _note_book(book, notices)
+    try:
+        export = _Export(book, name, layout, notices)
+        for sheet in choose_sheets(book, layout, notices):
+            export.read_sheet(sheet)
+        export.check_filled()
+    except ExportRefusedError as refusal:
+        if refusal.code in ("layout_mismatch", "no_data_rows"):
+            _refuse_if_empty(book)
+        raise
+    measurements = assemble(
+        book, layout, limits, notices, readings=export.readings, stated=export.stated,
+        sample_columns=export.sample_columns,
+    )  # fmt: skip
+    groups = frozenset(measurement.batch.casefold() for measurement in measurements)
+    for sheet, tables in export.walked:
+        note_stray_cells(sheet, tables, groups, notices)
+    return measurements
+
+
+def _refuse_if_empty(book: Book) -> None:
+    refusal = no_table_found(book)
+    if refusal is not None:
+        raise refusal
+
+
+def _note_book(book: Book, notices: NoticeBook) -> None:
+    if book.has_macros:
+        notices.add("macros_ignored")
+    if book.has_external_links:
+        notices.add("external_links_not_followed")
+    if book.limited:
+        notices.add("limited_checks")
+    if book.date_1904:
+        notices.add("date_system_1904")
+
+
+class _Export:
+    """Collects the readings of all sheets and tables."""
+
+    def __init__(self, book: Book, file: str, layout: Layout, notices: NoticeBook) -> None:
+        self._book, self._file, self._layout, self._notices = book, file, layout, notices
+        self.readings: list[Reading] = []
+        self.stated: dict[str, list[Stated]] = {}
+        self.sample_columns: dict[int, int] = {}
+        self.walked: list[tuple[Sheet, list[WalkedTable]]] = []
+
+    def read_sheet(self, sheet: Sheet) -> None:
+        """Walk down all tables of one sheet."""
+        self._check_anchors(sheet)
+        n_before = len(self.readings)
+        walks = []
+        for index, table in enumerate(self._layout.tables):
+            columns = find_columns(sheet, table, self._last_row(table))
+            for value, value_columns in columns.values:
+                stated = stated_in_table(columns, value, value_columns)
+                self.stated.setdefault(value.characteristic, []).extend(stated)
+            if "sample" in columns.sources:
+                self.sample_columns[index] = columns.sources["sample"]
+            walk = TableWalk(self._book, self._layout, index, columns, self._file, self._notices)
+            walk.run()
+            walks.append((columns, walk))
+        self._settle_lone_names(sheet, [walk for _, walk in walks])
+        for _, walk in walks:
+            self.readings.extend(sorted(walk.readings, key=lambda reading: reading.row))
+        self.walked.append((sheet, [WalkedTable(c, w.end_row, frozenset(w.used_rows)) for c, w in walks]))
+        if self._layout.sheet_pattern is not None and len(self.readings) == n_before:
+            self._notices.add("sheet_without_data", detail=sheet.name or "")
+
+    def _last_row(self, table: TableLayout) -> int:
+        """Return the last row before the next table of the layout."""
+        tops = [min((*other.header_rows, other.first_row)) for other in self._layout.tables]
+        return min((top - 1 for top in tops if top > table.first_row), default=MAX_ROW)
+
+    def _settle_lone_names(self, sheet: Sheet, walks: Sequence[TableWalk]) -> None:
+        """Judge rows that hold a batch cell alone: a missing value of a known batch, or a remark."""
+        for walk in walks:
+            known = {trimmed(r.group.text).casefold() for r in walk.readings if r.cell is not None}
+            for row, label in walk.lone_names:
+                if trimmed(label.text).casefold() in known:
+                    walk.add_missing(row, label)
+                else:
+                    walk.used_rows.discard(row)
+
+    def _check_anchors(self, sheet: Sheet) -> None:
+        for anchor in self._layout.anchors:
+            cell = sheet.cell(anchor.row, anchor.column)
+            text = " ".join(cell.text.split()) if cell is not None else ""
+            if not fnmatchcase(text, anchor.text):
+                ref = str(sheet.ref(anchor.row, anchor.column))
+                raise refused(
+                    "layout_mismatch",
+                    where=ref,
+                    found=f"The cell holds {quoted(text)}." if text else "The cell is empty.",
+                    expected=f"The layout says {quoted(anchor.text)}.",
+                    next_step="Check that the export comes from this instrument, or change the layout.",
+                    cells=[ref],
+                )
+
+    def check_filled(self) -> None:
+        """Refuse an export whose tables hold no values."""
+        if any(reading.cell is not None for reading in self.readings):
+            return
+        raise refused(
+            "no_data_rows",
+            where=", ".join(sheet.name or "the file" for sheet, _ in self.walked[:5]) or "the export",
+            found="The table holds no values.",
+            expected="At least one row of measurements.",
+            next_step="Check that the export is complete and the layout names the right rows.",
+        )

@@ -63,13 +63,17 @@ def read_claimed(claim: Claim, max_bytes: int) -> ClaimedExport:
     """
     if claim.copy.exists():
         data = claim.copy.read_bytes()
-        whole = len(data) == claim.seen.size <= max_bytes
-        return _whole(claim, data) if whole else _unread(claim, data, _too_large(claim, max_bytes))
+        if claim.seen.size > max_bytes:
+            return _unread(claim, data, _too_large(claim, max_bytes))
+        whole = len(data) == claim.seen.size
+        return _whole(claim, data) if whole else _unread(claim, data, _unreadable(claim))
     try:
         with open_plain(claim.original) as descriptor:
             data = _settled(claim, descriptor, max_bytes)
     except NotPlainFileError:
         return _unread(claim, claim.id.encode("ascii"), _not_plain(claim))
+    except PermissionError:
+        return _unread(claim, claim.id.encode("ascii"), _unreadable(claim))
     if claim.seen.size > max_bytes:
         return _unread(claim, data, _too_large(claim, max_bytes))
     write_durably(claim.copy, data, mode=0o400)
@@ -79,13 +83,15 @@ def read_claimed(claim: Claim, max_bytes: int) -> ClaimedExport:
 def copy_of(source: Path, seen: Seen, max_bytes: int) -> bytes | None:
     """Return the bytes of a file that stays where it is, its beginning where it is too large.
 
-    None where it is no plain file, went away, or is not in the state `seen`.
+    None where it is no plain file, went away, or is not in the state `seen`; empty where it must not be read.
     """
     try:
         with open_plain(source) as descriptor:
             return _read_still(descriptor, seen, max_bytes)
     except (NotPlainFileError, FileNotFoundError):
         return None
+    except PermissionError:
+        return b""
 
 
 def _settled(claim: Claim, descriptor: int, max_bytes: int) -> bytes:
@@ -145,6 +151,17 @@ def _too_large(claim: Claim, max_bytes: int) -> ExportRefusedError:
         found=f"The file has {claim.seen.size:,} bytes.",
         expected=f"At most {max_bytes:,} bytes (the limit of this site).",
         next_step="Export fewer results at a time, or have the limit in site.toml raised.",
+    )
+
+
+def _unreadable(claim: Claim) -> ExportRefusedError:
+    return ExportRefusedError(
+        "damaged_or_incomplete",
+        file=one_line(claim.name),
+        where="the whole file",
+        found="The system did not let the service read this file as a whole.",
+        expected="A file that the service may read.",
+        next_step="Give the file the rights of the others in the inbox and drop it here again.",
     )
 
 

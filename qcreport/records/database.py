@@ -9,9 +9,8 @@ to last.
 
 from __future__ import annotations
 
-import datetime as dt
 import sqlite3
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
 from typing import Any
@@ -23,9 +22,8 @@ from sqlalchemy.pool import ConnectionPoolEntry, NullPool
 from qcreport.errors import EnvironmentFailedError, LedgerError, QcReportError
 from qcreport.records.files import make_folder
 from qcreport.records.migrations import MIGRATIONS
+from qcreport.records.moments import Clock, utc_text
 from qcreport.records.tables import SCHEMA_VERSION
-
-Clock = Callable[[], dt.datetime]
 
 FILE_NAME = "records.sqlite3"
 
@@ -39,11 +37,6 @@ _PRAGMAS = (
     "PRAGMA trusted_schema = OFF",
 )
 _WRITES = "qcreport_writes"
-
-
-def utc_text(moment: dt.datetime) -> str:
-    """Return an aware time as UTC, ISO 8601 with Z, whole seconds."""
-    return moment.astimezone(dt.UTC).strftime("%Y-%m-%dT%H:%M:%SZ")
 
 
 class Database:

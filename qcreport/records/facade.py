@@ -20,12 +20,13 @@ from qcreport.measurements import MeasurementSet
 from qcreport.records import ledger, runs, store
 from qcreport.records.archive import Archive
 from qcreport.records.chain import Entry, Kind
-from qcreport.records.database import Clock, Database, utc_text
+from qcreport.records.database import Database
 from qcreport.records.facts import Facts, clean_text
 from qcreport.records.files import make_folder
 from qcreport.records.ledger import Step
 from qcreport.records.lock import exclusive
 from qcreport.records.lookups import Lookups
+from qcreport.records.moments import Clock, utc_text
 from qcreport.records.run import Answers, Reservation, Run, RunInputs, Slot, run_key
 from qcreport.records.store import Survey
 from qcreport.records.tables import EXPORT, REFUSAL

@@ -1,0 +1,129 @@
+"""From a report model to an unsealed PDF: PDF/A-3a and PDF/UA-1, the same bytes for the same inputs."""
+
+from __future__ import annotations
+
+import gc
+import io
+import threading
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
+from dataclasses import dataclass
+from functools import cache
+from typing import Any
+
+from qcreport.errors import ConfigError, EnvironmentFailedError, Fault
+from qcreport.report.attachment import Attachment
+from qcreport.report.html import render_html, style_text
+from qcreport.report.model import ReportModel
+from qcreport.report.moments import utc_moment
+from qcreport.report.templates import TemplateSet
+
+_LOCK = threading.Lock()
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RenderedReport:
+    """An unsealed report."""
+
+    pdf: bytes
+    """The file, with empty signature fields `Seal`, `Reviewed`, `Authorised`."""
+    pages: int
+    """Number of pages."""
+
+
+def render_report(
+    model: ReportModel, attachments: Sequence[Attachment], templates: TemplateSet
+) -> RenderedReport:
+    """Return the report as an unsealed PDF.
+
+    Parameters
+    ----------
+    model : ReportModel
+        Every text ready; see `build_model`.
+    attachments : sequence of Attachment
+        Files that travel inside, in any order; their dates are the report's.
+    templates : TemplateSet
+        From `load_templates`.
+
+    Raises
+    ------
+    ConfigError
+        Where a template of the laboratory cannot be filled in or asks for something that is not ours.
+    EnvironmentFailedError
+        Where a font is missing, or the pages would not fit the paper.
+    """
+    document = lay_out(model, templates)
+    return write(document, model, attachments)
+
+
+def lay_out(model: ReportModel, templates: TemplateSet) -> Any:
+    """Return the laid-out pages, checked: own fonts, nothing off the page."""
+    from weasyprint import HTML
+
+    from qcreport.report.fetcher import OwnAssetsFetcher, RefusedFetchError
+    from qcreport.report.page_checks import require_inside_pages, require_own_fonts
+
+    html = render_html(model, templates)
+    try:
+        with _LOCK, collector_at_rest():
+            fonts, style = _style(model.page_size, templates)
+            document = HTML(string=html, url_fetcher=OwnAssetsFetcher()).render(
+                font_config=fonts, stylesheets=[style]
+            )
+    except RefusedFetchError as error:
+        fault = Fault(text=f"may not fetch anything: {error}", file="templates")
+        raise ConfigError((fault,)) from None
+    require_own_fonts(document)
+    require_inside_pages(document)
+    return document
+
+
+def write(document: Any, model: ReportModel, attachments: Sequence[Attachment]) -> RenderedReport:
+    """Return laid-out pages as a PDF with attachments and signature fields."""
+    from weasyprint import Attachment as PdfAttachment
+
+    from qcreport.report.finish import Finisher
+
+    moment = utc_moment(model.made_at)
+    given = sorted(attachments, key=lambda a: a.name)
+    if len({a.name for a in given}) != len(given):
+        raise EnvironmentFailedError("Two attachments have the same name.")
+    inside = [
+        PdfAttachment(
+            file_obj=io.BytesIO(a.data),
+            name=a.name,
+            description=a.description,
+            relationship=a.relationship,
+            created=moment,
+            modified=moment,
+        )
+        for a in given
+    ]
+    with _LOCK, collector_at_rest():
+        pdf = document.write_pdf(
+            pdf_variant="pdf/a-3a", pdf_tags=True, attachments=inside, finisher=Finisher(given)
+        )
+    return RenderedReport(pdf=pdf, pages=len(document.pages))
+
+
+@contextmanager
+def collector_at_rest() -> Iterator[None]:
+    """Let the collector of cycles look less often: a layout makes many objects and drops few."""
+    before = gc.get_threshold()
+    gc.set_threshold(100_000, before[1], before[2])
+    try:
+        yield
+    finally:
+        gc.set_threshold(*before)
+
+
+@cache
+def _style(page_size: str, templates: TemplateSet) -> tuple[Any, Any]:
+    from weasyprint import CSS
+    from weasyprint.text.fonts import FontConfiguration
+
+    from qcreport.report.fetcher import OwnAssetsFetcher
+
+    fonts = FontConfiguration()
+    css = CSS(string=style_text(page_size, templates), font_config=fonts, url_fetcher=OwnAssetsFetcher())
+    return fonts, css

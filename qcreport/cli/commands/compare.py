@@ -19,7 +19,7 @@ from qcreport.pipeline.opened import Opened, opened
 from qcreport.pipeline.outcome import Outcome, Received, Reported
 from qcreport.records.files import make_folder, write_durably
 from qcreport.settings import PlanSettings, Site, find_plan, load_plans, load_site
-from qcreport.workbook.outcome import layout_try_json
+from qcreport.workbook.layout_try import layout_try_json
 
 
 def run(arguments: argparse.Namespace) -> int:

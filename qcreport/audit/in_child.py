@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING, Any
 from qcreport.audit.limits import MEGABYTE, VerifyLimits
 from qcreport.audit.verdict import Json, not_judged
 from qcreport.errors import EnvironmentFailedError, NotOurReportError
+from qcreport.signing.reading import require_pdf
 
 if TYPE_CHECKING:
     from cryptography import x509
@@ -51,6 +52,7 @@ def verify_in_child(
     EnvironmentFailedError
         The process cannot be started, or fails on its own account.
     """
+    require_pdf(pdf)
     bounds = limits if limits is not None else VerifyLimits()
     order = _order(roots, now, recompute, bounds)
     try:

@@ -21,7 +21,6 @@ def recompute_result(evidence: Evidence) -> dict[str, Any]:
     from qcreport.analysis import analyse
     from qcreport.plan import parse_plan
     from qcreport.rules import parse_rules
-    from qcreport.workbook.limits import Limits
     from qcreport.workbook.read_in_child import read_in_child
 
     export, context = evidence.export_name, evidence.context
@@ -35,6 +34,5 @@ def recompute_result(evidence: Evidence) -> dict[str, Any]:
         name=context.export_name,
         layout_bytes=files["layout.toml"],
         layout_file="layout.toml",
-        limits=Limits(),
     )
     return analyse(measurements, plan, rules, context).to_json()

@@ -83,6 +83,9 @@ def _recomputed(evidence: Evidence, recompute_with: Recompute | None) -> Recompu
         anew = recompute_with(evidence)
     except QcReportError as error:
         return _not_done(f"could not be computed anew: {error.text}")
+    except (ValueError, TypeError, ArithmeticError, LookupError):
+        # The settings were read and the seal may hold, yet whoever sealed them made them disagree.
+        return _not_done("could not be computed anew: the attachments do not fit together")
     compared = compare_results(evidence.result, anew)
     return RecomputedStatus(
         done=True, matches=compared.matches, differences=compared.differences, notes=compared.notes

@@ -40,6 +40,20 @@ class OpenedPdf:
         return min(signed_length(self.seal), len(self.data))
 
 
+def require_pdf(data: bytes) -> None:
+    """Refuse what does not begin as a PDF, and what is larger than any report.
+
+    Raises
+    ------
+    NotOurReportError
+        It is one or the other.
+    """
+    if not data.startswith(b"%PDF-"):
+        raise NotOurReportError(_NOT_A_PDF)
+    if len(data) > LARGEST_PDF:
+        raise NotOurReportError(f"This PDF is larger than {LARGEST_PDF >> 20} MB; no report of ours is.")
+
+
 def open_sealed(pdf: bytes) -> OpenedPdf:
     """Return the PDF with its signatures found.
 
@@ -48,10 +62,7 @@ def open_sealed(pdf: bytes) -> OpenedPdf:
     NotOurReportError
         Not a PDF, not readable, encrypted, or without a seal.
     """
-    if not pdf.startswith(b"%PDF-"):
-        raise NotOurReportError(_NOT_A_PDF)
-    if len(pdf) > LARGEST_PDF:
-        raise NotOurReportError(f"This PDF is larger than {LARGEST_PDF >> 20} MB; no report of ours is.")
+    require_pdf(pdf)
     with reading_pdf():
         from pyhanko.pdf_utils.reader import PdfFileReader
 

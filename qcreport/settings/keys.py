@@ -67,7 +67,9 @@ def write_key(site: Site, files: KeyFiles, made: MadeKey, passphrase_file: str |
     if not files.service:
         return
     path = site.root / SITE_FILE
-    stored = None if passphrase_file is None else str(Path(passphrase_file).absolute())
+    stored = None
+    if passphrase_file is not None:
+        stored = _relative(Path(passphrase_file).resolve(), site.root)
     text = with_seal(path.read_text(encoding="utf-8"), _relative(files.key, site.root), stored)
     parse_site(text.encode(), SITE_FILE, site.root)
     write_durably(path, text.encode("utf-8"))

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
 from dataclasses import dataclass
 
 from qcreport.errors import DegenerateDataError
@@ -61,11 +60,6 @@ def require_alpha(alpha: float) -> None:
         raise DegenerateDataError(f"An error rate must lie between 0 and 1; found {alpha}.")
 
 
-def finite_df(df: float) -> float | None:
-    """Return `df`, or None where it is infinite."""
-    return df if math.isfinite(df) else None
-
-
 def all_pairs(k: int) -> tuple[tuple[int, int], ...]:
     """Return the pairs (i, j), i < j < k, in order."""
     return tuple((i, j) for i in range(k) for j in range(i + 1, k))
@@ -79,8 +73,3 @@ def sidak(p: float, m: int) -> float:
 def sidak_level(alpha: float, m: int) -> float:
     """Return the level of one of m comparisons, 1 - (1 - alpha)**(1/m)."""
     return -math.expm1(math.log1p(-alpha) / m)
-
-
-def common(values: Sequence[float]) -> float | None:
-    """Return the value that all share, or None."""
-    return values[0] if all(value == values[0] for value in values) else None

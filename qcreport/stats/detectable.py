@@ -30,7 +30,6 @@ Procedure = Literal[
 ]
 
 _LARGEST_DF = 1e7
-_MOST_STEPS = 200
 
 
 def detectable_difference(se: float, df: float | None, critical_value: float, power: float = 0.80) -> float:
@@ -195,9 +194,6 @@ def _root(excess: Callable[[float], float], start: float) -> float:
     low, high = 0.0, max(2.0 * start, 1.0)
     while excess(high) > 0.0:
         low, high = high, 2.0 * high
-    for _ in range(_MOST_STEPS):
-        middle = 0.5 * (low + high)
-        if middle in (low, high):
-            break
+    while (middle := 0.5 * (low + high)) not in (low, high):
         low, high = (middle, high) if excess(middle) > 0.0 else (low, middle)
-    return 0.5 * (low + high)
+    return middle

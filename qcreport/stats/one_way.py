@@ -170,8 +170,9 @@ def supported_digits(groups: Sequence[GroupSummary]) -> int:
     Returns
     -------
     int
-        0 to 15: the number of digits that the root mean square rounding error leaves, as if it were wholly
-        in line with the scatter.
+        0 to 15: the digits that the root mean square rounding error leaves of the scatter within and
+        between groups, as if half of it were in line with them; on certified sets one digit less than are
+        right.
 
     Raises
     ------
@@ -184,7 +185,7 @@ def supported_digits(groups: Sequence[GroupSummary]) -> int:
     total = sum(g.n for g in groups)
     sd_within = math.sqrt(result.ms_within)
     sd_between = math.sqrt(max(result.ss_between, result.df_between * result.ms_within) / total)
-    relative = 2.0 * rounding * (1.0 / sd_within + 1.0 / sd_between)
+    relative = rounding * math.hypot(1.0 / sd_within, 1.0 / sd_between)
     if relative <= 10.0**-_MOST_DIGITS:
         return _MOST_DIGITS
     return max(0, min(_MOST_DIGITS, math.floor(-math.log10(relative))))

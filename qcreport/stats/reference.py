@@ -182,7 +182,7 @@ def dunnett_weighted(
     dfs = np.array([[p.first.n - 1.0, p.second.n - 1.0] for p in pairs])
     t = _towards(np.array([p.statistic for p in pairs]), direction)
     critical = weighted_critical_value(np.full(m, sidak_level(alpha, m)), variances, dfs, quantile)
-    levels = level_at_critical_value(np.abs(t), variances, dfs, tail, quantile)
+    levels = level_at_critical_value(np.abs(t), variances, dfs, tail)
     if direction != "both":  # by symmetry a statistic on the other side has the complementary level
         levels = np.where(t == 0.0, 0.5, np.where(t > 0.0, levels, 1.0 - levels))
     rows = [

@@ -145,6 +145,7 @@ def _mean_in_two_parts(values: Sequence[float]) -> tuple[float, float]:
     scaled = [math.ldexp(value, -down) for value in values] if down else values
     mean = math.fsum(scaled) / n
     residual = math.fsum(chain(scaled, repeat(-mean, n))) / n
+    mean, residual = mean + residual, residual - ((mean + residual) - mean)
     return math.ldexp(mean, down), math.ldexp(residual, down)
 
 

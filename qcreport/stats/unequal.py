@@ -238,7 +238,7 @@ def dunnett_c(groups: Sequence[GroupSummary], *, alpha: float) -> PosthocResult:
     dfs = np.array([[p.first.n - 1.0, p.second.n - 1.0] for p in pairs])
     t = np.abs([p.statistic for p in pairs])
     critical = weighted_critical_value(np.full(t.shape, alpha), variances, dfs, quantile)
-    levels = level_at_critical_value(t, variances, dfs, tail, quantile)
+    levels = level_at_critical_value(t, variances, dfs, tail)
     return _result("dunnett_c", alpha, pairs, levels, critical, own_df=False)
 
 

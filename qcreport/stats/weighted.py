@@ -15,9 +15,13 @@ from qcreport.stats.distributions.rows import Array, Index
 Tail = Callable[[Array, Array], Array]
 Quantile = Callable[[Array, Array], Array]
 
-_SMALLEST_LEVEL = 1e-299
-_MOST_STEPS = 80
-_CLOSE = 1e-14
+_SMALLEST_T = 1e-300
+_SMALLEST_TAIL = 1e-310
+_WIDEST = 46.0
+"""The two points differ by at most this in their logarithms."""
+_MOST_STEPS = 120
+_CLOSE = 1e-13
+_FIRST_STEP = 0.25
 
 
 def weighted_critical_value(level: Array, variances: Array, dfs: Array, quantile: Quantile) -> Array:
@@ -44,11 +48,12 @@ def weighted_critical_value(level: Array, variances: Array, dfs: Array, quantile
     return np.asarray(second + (first - second) * share)
 
 
-def level_at_critical_value(t: Array, variances: Array, dfs: Array, tail: Tail, quantile: Quantile) -> Array:
+def level_at_critical_value(t: Array, variances: Array, dfs: Array, tail: Tail) -> Array:
     """Return the level at which |t| equals its weighted critical value, the p value of each pair.
 
-    The critical value lies between the two quantiles, so the level lies between the two tails; regula falsi
-    (Illinois form) in log level closes that bracket.
+    Sought are two points x and y with w x + (1 - w) y = t and equal tails, w <= 1/2 the smaller weight;
+    regula falsi in log x (Illinois form) on the difference of the log tails,
+    which falls in x.
 
     Parameters
     ----------
@@ -56,47 +61,76 @@ def level_at_critical_value(t: Array, variances: Array, dfs: Array, tail: Tail, 
         |statistic|.
     variances, dfs
         As for `weighted_critical_value`.
-    tail, quantile : callables
-        tail(t, df), and its inverse in t.
+    tail : callable
+        tail(t, df), on the scale of |t|.
 
     Returns
     -------
     (m,) floats in [0, 1]
     """
-    tails = np.stack([tail(t, dfs[:, 0]), tail(t, dfs[:, 1])], axis=-1)
-    low, high = tails.min(axis=-1), tails.max(axis=-1)
-    result = np.where(high <= _SMALLEST_LEVEL, 0.0, high)
-    open_rows = np.flatnonzero((high > low) & (high > _SMALLEST_LEVEL) & (t > 0.0))
-    if open_rows.size:
-        log_low = np.log(np.maximum(low[open_rows], _SMALLEST_LEVEL))
-        at = (t[open_rows], variances[open_rows], dfs[open_rows])
-        result[open_rows] = np.exp(_illinois(log_low, np.log(high[open_rows]), *at, quantile))
-    return result
+    t = np.maximum(t, _SMALLEST_T)
+    light = np.argmin(variances, axis=-1)[:, None]
+    a = np.take_along_axis(variances, light, axis=-1)[:, 0]
+    df_light = np.take_along_axis(dfs, light, axis=-1)[:, 0]
+    df_heavy = np.take_along_axis(dfs, 1 - light, axis=-1)[:, 0]
+    weight = a / (variances[:, 0] + variances[:, 1])
+
+    def excess(u: Array, rows: Index) -> tuple[Array, Array]:
+        """Return log tail of x less log tail of y, and the tail of y, the better conditioned of the two."""
+        w, size = weight[rows], t[rows]
+        y = np.maximum((1.0 - w * np.exp(u)) / (1.0 - w), 0.0) * size
+        both = tail(np.concatenate([np.exp(u) * size, y]), np.concatenate([df_light[rows], df_heavy[rows]]))
+        logs = np.log(np.maximum(both, _SMALLEST_TAIL))
+        return logs[: rows.size] - logs[rows.size :], both[rows.size :]
+
+    return _root_level(excess, np.minimum(-np.log(weight), _WIDEST))
 
 
-def _illinois(a: Array, b: Array, t: Array, variances: Array, dfs: Array, quantile: Quantile) -> Array:
-    """Return the log level in [a, b] where log critical value equals log t; it falls as the level grows."""
+def _root_level(excess: Callable[[Array, Index], tuple[Array, Array]], most: Array) -> Array:
+    """Return the tail of y at the root of `excess` in u = log(x / t), -46 <= u <= most, for each row."""
+    rows = np.arange(most.size)
+    near = np.zeros(most.size)
+    f_near, level = excess(near, rows)
+    rising = f_near > 0.0
+    far = np.where(rising, np.minimum(_FIRST_STEP, most), -_FIRST_STEP)
+    f_far = np.zeros(most.size)
+    rows = rows[np.abs(f_near) > _CLOSE]
+    searching = rows
+    while searching.size:
+        f_far[searching], level[searching] = excess(far[searching], searching)
+        limit = np.where(rising, most, -_WIDEST)[searching]
+        same_side = ((f_far[searching] > 0.0) == rising[searching]) & (far[searching] != limit)
+        searching = searching[same_side]
+        near[searching], f_near[searching] = far[searching], f_far[searching]
+        far[searching] = np.clip(4.0 * far[searching], -_WIDEST, most[searching])
+    _close_in(excess, rows, (near, far), (f_near, f_far), level)
+    return level
 
-    def excess(x: Array, rows: Index) -> Array:
-        level = np.minimum(np.exp(x), 1.0 - 2.0**-53)
-        return np.asarray(
-            np.log(weighted_critical_value(level, variances[rows], dfs[rows], quantile) / t[rows])
-        )
 
-    rows = np.arange(a.size)
-    x, fa, fb = 0.5 * (a + b), excess(a, rows), excess(b, rows)
-    fa, fb = np.maximum(fa, 0.0), np.minimum(fb, 0.0)
-    for _ in range(_MOST_STEPS):
-        spread = fa[rows] - fb[rows]
-        share = np.where(spread > 0.0, fa[rows] / np.where(spread > 0.0, spread, 1.0), 0.5)
-        x[rows] = a[rows] + (b[rows] - a[rows]) * np.clip(share, 0.0, 1.0)
-        f = excess(x[rows], rows)
-        above = f > 0.0
-        fb[rows] = np.where(above, 0.5 * fb[rows], f)
-        fa[rows] = np.where(above, f, 0.5 * fa[rows])
-        a[rows], b[rows] = np.where(above, x[rows], a[rows]), np.where(above, b[rows], x[rows])
+def _close_in(
+    excess: Callable[[Array, Index], tuple[Array, Array]],
+    rows: Index,
+    ends: tuple[Array, Array],
+    values: tuple[Array, Array],
+    level: Array,
+) -> None:
+    """Shrink each row's bracket, writing the tail at its newest point into `level`."""
+    (a, b), (fa, fb) = ends, values
+    last = np.zeros(level.size)  # which end moved last: +1 the first, -1 the second
+    step = 0
+    while rows.size and step < _MOST_STEPS:
+        step += 1
         width = b[rows] - a[rows]
-        rows = rows[(np.abs(f) > _CLOSE) & (width > _CLOSE)]
-        if rows.size == 0:
-            break
-    return x
+        u = a[rows] + width * np.clip(fa[rows] / (fa[rows] - fb[rows]), 0.0, 1.0)
+        f, level[rows] = excess(u, rows)
+        side = np.where((f > 0.0) == (fa[rows] > 0.0), 1.0, -1.0)
+        kept = np.where(
+            side == last[rows], 0.5, 1.0
+        )  # the Illinois rule: an end kept twice loses half its weight
+        last[rows] = side
+        fa[rows], fb[rows] = (
+            np.where(side > 0.0, f, kept * fa[rows]),
+            np.where(side > 0.0, kept * fb[rows], f),
+        )
+        a[rows], b[rows] = np.where(side > 0.0, u, a[rows]), np.where(side > 0.0, b[rows], u)
+        rows = rows[(np.abs(f) > _CLOSE) & (np.abs(width) > _CLOSE)]

@@ -44,7 +44,9 @@ def quantile(laws: Sequence[Law], law_of_row: Index, p: Array, df: Array, start:
         df <= LARGEST_TABLED_DF, 3e-9, 1e-14
     )  # squared by the step itself where the slope is exact
     active = np.arange(x.size)
-    for _ in range(_MOST_STEPS):
+    step = 0
+    while active.size and step < _MOST_STEPS:
+        step += 1
         tail = tail_area(laws, law_of_row[active], np.exp(x[active]), df[active])
         here = x[active]
         with np.errstate(divide="ignore", invalid="ignore"):
@@ -55,8 +57,6 @@ def quantile(laws: Sequence[Law], law_of_row: Index, p: Array, df: Array, start:
         x[active] = _inside(np.minimum(here + move, _LARGEST_LOG + 1.0), low[active], high[active], here)
         moved = np.abs(x[active] - here)
         active = active[(np.abs(excess) > _CLOSE) & (moved > enough[active])]
-        if active.size == 0:
-            break
     return np.where(x > _LARGEST_LOG, np.inf, np.exp(x))
 
 

@@ -14,7 +14,7 @@ from typing import NamedTuple
 import numpy as np
 
 from qcreport.stats.distributions import scale
-from qcreport.stats.distributions.laws import Law, reach
+from qcreport.stats.distributions.laws import Law, coarsest_level, reach
 from qcreport.stats.distributions.rows import LENGTH_UNIT, Array, Index, distinct, row_blocks
 from qcreport.stats.distributions.tables import table
 
@@ -81,7 +81,8 @@ class _Windows(NamedTuple):
 
 def _from_tables(laws: Sequence[Law], law_of_row: Index, q: Array, df: Array) -> Tail:
     log_q = np.log(q)
-    level = scale.levels(df)
+    coarsest = np.array([coarsest_level(law) for law in laws], dtype=np.intp)
+    level = np.maximum(scale.levels(df), coarsest[law_of_row])
     step = scale.STEPS[level]
     windows = _windows(laws, law_of_row, level, log_q, df)
     start = windows.first * step - log_q  # u at the first node

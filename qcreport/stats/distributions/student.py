@@ -21,6 +21,8 @@ def t_two_sided(t: float, df: float) -> float:
     if ratio <= 1.0:
         return float(special.betaincc(0.5, 0.5 * df, ratio * ratio / (1.0 + ratio * ratio)))
     inverse = 1.0 / ratio
+    if inverse < 1e-150:  # the square would be lost: first term of the series of the incomplete beta function
+        return math.exp(df * math.log(inverse) - float(special.betaln(0.5 * df, 0.5))) / (0.5 * df)
     return float(special.betainc(0.5 * df, 0.5, inverse * inverse / (1.0 + inverse * inverse)))
 
 
@@ -47,18 +49,13 @@ def t_upper_quantile(p: float, df: float) -> float:
 
 def _polished(t: float, p: float, df: float) -> float:
     """Take Newton steps in (log t, log p) so that the tail agrees to rounding."""
+    if not 0.0 < t < 1e150:  # beyond, the square is lost and the start is the asymptote
+        return max(t, 0.0)
+    log_constant = float(special.gammaln(0.5 * (df + 1.0)) - special.gammaln(0.5 * df))
+    log_constant -= 0.5 * math.log(df * math.pi)
     for _ in range(3):
-        if not 0.0 < t < math.inf:
-            return max(t, 0.0)
         area = t_two_sided(t, df)
-        log_density = (
-            float(special.gammaln(0.5 * (df + 1.0)) - special.gammaln(0.5 * df))
-            - 0.5 * math.log(df * math.pi)
-            - 0.5 * (df + 1.0) * math.log1p(t / df * t)
-        )
-        slope = 2.0 * math.exp(log_density) * t
-        if slope <= 0.0 or area <= 0.0:
-            return t
+        slope = 2.0 * t * math.exp(log_constant - 0.5 * (df + 1.0) * math.log1p(t / df * t))
         t *= math.exp(math.log(area / p) * area / slope)
     return t
 

@@ -1,0 +1,96 @@
+"""Recompute rows of the distribution fixtures with mpmath, by another route than the package takes.
+
+The package tabulates P(R > r) and sums over log s; here the double integral is done directly with tanh-sinh
+quadrature in s and z. Slow (minutes a row). Run with mpmath installed: python distributions.py
+[every-nth-row].
+"""
+
+import json
+import sys
+from pathlib import Path
+
+import mpmath as mp
+
+DATA = Path(__file__).parent.parent / "data"
+mp.mp.dps = 40
+
+
+def phi(z):
+    return mp.exp(-z * z / 2) / mp.sqrt(2 * mp.pi)
+
+
+def tail(z):
+    return mp.erfc(z / mp.sqrt(2)) / 2
+
+
+def range_tail(r, k):
+    def f(z):
+        share = tail(r - z) / tail(-z)
+        return phi(z) * tail(-z) ** (k - 1) * -mp.expm1((k - 1) * mp.log1p(-share))
+
+    return k * mp.quad(f, [-14, -6, -2, 0, 2, 6, 14, 30], maxdegree=8)
+
+
+def modulus_tail(m, k):
+    return -mp.expm1(k * mp.log1p(-mp.erfc(m / mp.sqrt(2)))) if m > 0 else mp.mpf(1)
+
+
+def many_to_one_tail(t, n0, ni, two):
+    def f(z):
+        log_none = mp.mpf(0)
+        for n in ni:
+            load = mp.sqrt(mp.mpf(n) / (n0 + n))
+            width = mp.sqrt(1 - load**2)
+            out = tail((t - load * z) / width) + (tail((t + load * z) / width) if two else 0)
+            log_none += mp.log1p(-out)
+        return phi(z) * -mp.expm1(log_none)
+
+    return mp.quad(f, [-14, -6, -2, 0, 2, 6, 14, 30], maxdegree=8)
+
+
+def studentised(law, q, df):
+    """Integrate law(q s) over s, df s**2 chi-squared on df."""
+    if df == mp.inf:
+        return law(q)
+    constant = 2 * (df / 2) ** (df / 2) / mp.gamma(df / 2)
+    centre = 1 / mp.sqrt(1 + q * q / (2 * df))
+    width = centre / mp.sqrt(2 * df)
+    cuts = sorted(
+        {mp.mpf(0), *(max(mp.mpf(0), centre + c * width) for c in (-12, -6, -3, 0, 3, 6, 12, 40, 120))}
+    )
+    return mp.quad(
+        lambda s: constant * s ** (df - 1) * mp.exp(-df * s * s / 2) * law(q * s), cuts, maxdegree=7
+    )
+
+
+def check(name, every, value):
+    rows = json.loads((DATA / f"{name}.json").read_text())["rows"]
+    for row in rows[::every]:
+        expected = mp.mpf(row["sf"])
+        print(name, row, mp.nstr(value(row) / expected - 1, 3), flush=True)
+
+
+def main():
+    every = int(sys.argv[1]) if len(sys.argv) > 1 else 60
+    mp.mp.dps = 25
+    check(
+        "maximum_modulus",
+        every,
+        lambda r: studentised(lambda x: modulus_tail(x, r["k"]), mp.mpf(r["m"]), mp.mpf(str(r["df"]))),
+    )
+    check(
+        "many_to_one",
+        max(every // 6, 1),
+        lambda r: studentised(
+            lambda x: many_to_one_tail(x, r["n0"], r["ni"], r["two"]), mp.mpf(r["q"]), mp.mpf(str(r["df"]))
+        ),
+    )
+    check(
+        "studentized_range",
+        every,
+        lambda r: studentised(lambda x: range_tail(x, r["k"]), mp.mpf(r["q"]), mp.mpf(str(r["df"]).lower())),
+    )
+
+
+if __name__ == "__main__":
+    main()

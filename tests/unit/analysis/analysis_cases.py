@@ -12,7 +12,7 @@ from typing import Any
 from qcreport.analysis import Context, Result, analyse
 from qcreport.analysis.context import Laboratory
 from qcreport.analysis.result import CharacteristicResult, PairResult
-from qcreport.measurements import Censoring, CellRef, Measurement, MeasurementSet
+from qcreport.measurements import CellRef, Censoring, Measurement, MeasurementSet
 from qcreport.plan import ComparisonPlan, parse_plan
 from qcreport.rules import RulesTable, parse_rules
 from qcreport.settings.shipped import shipped_folder
@@ -76,7 +76,9 @@ def plan(
     return parse_plan(text.encode(), "made-by-hand.toml")
 
 
-def measurement(value: float | str | None, *, batch: str, row: int, column: int = 2, **more: Any) -> Measurement:
+def measurement(
+    value: float | str | None, *, batch: str, row: int, column: int = 2, **more: Any
+) -> Measurement:
     """Return a reading; a text such as `<0.5` or `nd` is censored, None is missing."""
     censored, number = None, value
     if isinstance(value, str):
@@ -114,7 +116,9 @@ def export(measurements: Iterable[Measurement]) -> MeasurementSet:
 def of_groups(groups: Mapping[str, Values], **more: Any) -> MeasurementSet:
     """Return an export with one cell a value, group below group in column B."""
     pairs = [(label, value) for label, values in groups.items() for value in values]
-    return export(measurement(v, batch=label, row=row, **more) for row, (label, v) in enumerate(pairs, start=2))
+    return export(
+        measurement(v, batch=label, row=row, **more) for row, (label, v) in enumerate(pairs, start=2)
+    )
 
 
 def run(

@@ -185,7 +185,8 @@ def _without_inserted(entries: Sequence[Entry]) -> tuple[list[Entry], list[Chain
     hashes = {e.entry_hash for e in entries}
     kept: list[Entry] = []
     problems: list[ChainProblem] = []
-    for entry, following in zip(entries, [*entries[1:], None], strict=True):
+    for i, entry in enumerate(entries):
+        following = entries[i + 1] if i + 1 < len(entries) else None
         before = kept[-1].entry_hash if kept else NO_ENTRY_HASH
         belongs_elsewhere = entry.entry_hash in continued or (
             entry.previous_hash != before and entry.previous_hash in hashes

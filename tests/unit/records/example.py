@@ -14,7 +14,7 @@ from qcreport.records.store import Survey
 PLAN, LAYOUT, RULES, PAGE = b"plan", b"layout", b"rules", b"page"
 
 
-def measurement(row: int, text: str, **changes: object) -> Measurement:
+def measurement(row: int, number: str, **changes: object) -> Measurement:
     """Return a reading of sample `s{row}`; `changes` replace its fields."""
     plain = Measurement(
         characteristic="lap_shear",
@@ -22,8 +22,8 @@ def measurement(row: int, text: str, **changes: object) -> Measurement:
         line=None,
         sample=f"s{row}",
         reading="1",
-        value=float(text),
-        text=text,
+        value=float(number),
+        text=number,
         decimals=2,
         unit="MPa",
         censored=None,

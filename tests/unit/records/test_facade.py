@@ -48,7 +48,7 @@ def test_a_step_repeated_after_a_kill_changes_nothing(
     handling, reports = Handling(records), tmp_path / "reports"
     steps = [handling.receive, handling.read, handling.reserve, handling.compared]
     steps.append(lambda: handling.sealed(reports))
-    for reached in range(1, len(steps) + 1):
+    for reached in (*range(1, len(steps) + 1), len(steps)):
         for step in steps[:reached]:
             clock.advance(61)
             step()
@@ -261,6 +261,12 @@ def test_entries_by_time(records: Records, clock: SetClock) -> None:
     assert [e.kind for e in records.entries(since="2026-11-02T06:13:00Z")] == ["service stopped"]
     assert [e.kind for e in records.entries(until="2026-11-02T06:13:00Z")] == ["service started"]
     assert re.fullmatch(r"[0-9a-f]{64}", records.head().entry_hash)
+
+
+def test_a_lock_that_cannot_be_opened_is_told(records: Records) -> None:
+    (records.database.path.parent / "locks/ab.lock").mkdir(parents=True)
+    with pytest.raises(EnvironmentFailedError, match="could not be opened"):
+        records.issuing("ab" * 32).__enter__()
 
 
 def test_one_process_holds_a_run_key(records: Records) -> None:

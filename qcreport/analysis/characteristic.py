@@ -23,7 +23,6 @@ from qcreport.stats.one_way import AnovaResult, anova, supported_digits, welch
 from qcreport.stats.summary import GroupSummary, summarize
 
 NOT_COMPARED = "not_compared"
-_CLEARED = frozenset({"within_margin", "equivalent"})
 
 
 def characteristic_result(
@@ -39,11 +38,11 @@ def characteristic_result(
         unit=c.unit,
         alpha=question.alpha,
         margin=(c.margin_below, c.margin_above),
-        scale=question.plan.scale,
-        direction=c.direction,
+        scale=question.plan.scale.value,
+        direction=c.direction.value,
         lower_limit=c.lower_limit,
         upper_limit=c.upper_limit,
-        independent_unit=question.plan.independent_unit,
+        independent_unit=question.plan.independent_unit.value,
         reference=question.plan.reference,
         groups=tuple(_group_result(g) for g in groups if g.n > 0),
         not_compared=_not_compared(outcome),
@@ -56,7 +55,7 @@ def characteristic_result(
         procedure=outcome.procedure,
         critical_value=None if comparison is None else comparison.posthoc.critical_value,
         hsd=None if comparison is None else comparison.posthoc.hsd,
-        all_within_margin=None if comparison is None else comparison.all_within_margin,
+        all_within_margin=_all_within(outcome),
         pairs=() if comparison is None else comparison.pairs,
         sensitivity=sensitivity(outcome, question),
         flagged=flag(groups, outcome, question),
@@ -69,10 +68,15 @@ def _answer(outcome: Outcome) -> str:
     """Return the most serious pair's answer; what was left uncompared keeps anything from being cleared."""
     if outcome.comparison is None or not outcome.comparison.pairs:
         return NOT_COMPARED
-    worst = most_serious([p.answer for p in outcome.comparison.pairs])
-    if outcome.ready.not_compared and worst in _CLEARED:
-        return "not_settled"
-    return worst
+    left_out = [NOT_COMPARED] if outcome.ready.not_compared else []
+    return most_serious([*(p.answer for p in outcome.comparison.pairs), *left_out])
+
+
+def _all_within(outcome: Outcome) -> bool | None:
+    """Return whether every pair is within the margin; what was not compared was not shown to be."""
+    if outcome.comparison is None or outcome.comparison.all_within_margin is None:
+        return None
+    return outcome.comparison.all_within_margin and not outcome.ready.not_compared
 
 
 def _not_compared(outcome: Outcome) -> tuple[NotCompared, ...]:

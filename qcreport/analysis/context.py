@@ -170,5 +170,5 @@ def context_from_json(data: Mapping[str, Any]) -> Context:
             demonstration=bool(data["demonstration"]),
             software_version=str(data["software_version"]),
         )
-    except (KeyError, TypeError, AttributeError) as error:
+    except (KeyError, TypeError, AttributeError, OverflowError) as error:
         raise ValueError(f"context.json lacks or spoils {error}") from None

@@ -154,7 +154,7 @@ def _mean_of(values: list[UnitValue]) -> UnitValue:
         value=math.fsum(v.value for v in values) / len(values),
         text="",
         decimals=max(v.decimals for v in values),
-        sample=values[0].sample,
+        sample=values[0].sample if len({v.sample for v in values}) == 1 else None,
         cells=tuple(cell for v in values for cell in v.cells),
         censored=_joint(limits),
         marks=tuple(dict.fromkeys(mark for v in values for mark in v.marks)),

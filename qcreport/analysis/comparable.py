@@ -33,12 +33,17 @@ class Comparable:
     @property
     def varies(self) -> bool:
         """Whether any group holds two different values."""
-        return any(min(v) != max(v) for v in self.values)
+        return not all(all_equal(v) for v in self.values)
 
     @property
     def censored(self) -> bool:
         """Whether any value is known only by a limit."""
         return any(g.censored for g in self.groups)
+
+
+def all_equal(values: Sequence[float]) -> bool:
+    """Return whether all values are one value, but for what averaging readings does to the last bits."""
+    return max(values) - min(values) <= 4.0 * math.ulp(max(map(abs, values)))
 
 
 def comparable(groups: Sequence[Group], plan: ComparisonPlan) -> Comparable:

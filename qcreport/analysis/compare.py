@@ -6,7 +6,7 @@ import math
 from dataclasses import dataclass
 from typing import cast
 
-from qcreport.analysis.comparable import Comparable
+from qcreport.analysis.comparable import Comparable, all_equal
 from qcreport.analysis.procedures import on_means, run_procedure
 from qcreport.analysis.result import PairResult
 from qcreport.measurements import Notice
@@ -19,6 +19,9 @@ from qcreport.stats.unequal import welch_pair
 
 Margin = tuple[float | None, float | None]
 """Below (negative) and above (positive), on the scale of the comparison."""
+
+_LARGEST_LOGARITHM = 700.0
+"""Its exponential is the last that is safely a number."""
 
 OPEN_ANSWERS = frozenset({"different", "not_settled"})
 
@@ -44,8 +47,11 @@ def compare(
     *,
     alpha: float,
     scale: Scale,
+    sizes: bool = True,
 ) -> Comparison | None:
     """Return every pair's numbers and answer; None for a procedure not based on means.
+
+    `sizes` asks for the number of results that would settle each open pair, which takes most of the time.
 
     Raises
     ------
@@ -67,7 +73,9 @@ def compare(
     )
     margin = margin_on_scale(characteristic, scale)
     by_label = {s.label: s for s in summaries}
-    needed = _Needed(procedure=procedure, n_groups=len(summaries), alpha=alpha, margin=margin)
+    needed = (
+        _Needed(procedure=procedure, n_groups=len(summaries), alpha=alpha, margin=margin) if sizes else None
+    )
     pairs = tuple(_pair(c, by_label, margin, scale, needed) for c in posthoc.comparisons)
     return Comparison(
         posthoc=posthoc,
@@ -93,7 +101,7 @@ def _floored(ready: Comparable, scale: Scale) -> tuple[tuple[GroupSummary, ...],
     summaries: list[GroupSummary] = []
     notices: list[Notice] = []
     for group, summary, values in zip(ready.groups, ready.summaries, ready.values, strict=True):
-        if min(values) != max(values):
+        if not all_equal(values):
             summaries.append(summary)
             continue
         step = 10.0 ** -max(u.decimals for u in group.units)
@@ -139,13 +147,22 @@ class _Needed:
     alpha: float
     margin: Margin
 
-    def results_a_group(self, difference: float, first: GroupSummary, second: GroupSummary) -> int | None:
+    def results_a_group(
+        self, pair: PairwiseComparison, first: GroupSummary, second: GroupSummary
+    ) -> int | None:
         """Return about how many results a group would put the whole interval on one side of the margin.
 
-        The difference and the scatter are taken as seen; None where the difference lies on the margin itself or
-        no margin is set.
+        The difference and the scatter are taken as seen; None where no number does: the difference lies on
+        the margin itself, no margin is set, or an interval open to one side reaches across it for ever.
         """
-        distances = [abs(difference - m) for m in self.margin if m is not None]
+        below, above = self.margin
+        if pair.lower is None:
+            ends = [m for m in (below,) if m is not None and pair.difference < m]
+        elif pair.upper is None:
+            ends = [m for m in (above,) if m is not None and pair.difference > m]
+        else:
+            ends = [m for m in (below, above) if m is not None]
+        distances = [abs(pair.difference - m) for m in ends]
         if not distances or min(distances) == 0.0:
             return None
         return sample_size_for(
@@ -162,7 +179,7 @@ def _pair(
     by_label: dict[str, GroupSummary],
     margin: Margin,
     scale: Scale,
-    needed: _Needed,
+    needed: _Needed | None,
 ) -> PairResult:
     answer = judge(comparison.lower, comparison.upper, margin[0], margin[1])
     detectable = None
@@ -171,9 +188,9 @@ def _pair(
             comparison.se, _df(comparison, by_label), comparison.critical_value
         )
     settled_by = None
-    if answer in OPEN_ANSWERS:
+    if needed is not None and answer in OPEN_ANSWERS:
         settled_by = needed.results_a_group(
-            comparison.difference, by_label[comparison.first], by_label[comparison.second]
+            comparison, by_label[comparison.first], by_label[comparison.second]
         )
     return PairResult(
         first=comparison.first,
@@ -193,7 +210,10 @@ def _pair(
 
 
 def _back(value: float | None, scale: Scale) -> float | None:
-    """Return a difference as reported: a ratio of geometric means on the log scale."""
+    """Return a difference as reported: a ratio of geometric means on the log scale.
+
+    A ratio beyond double precision is None, as an open end is.
+    """
     if value is None or scale is not Scale.LOG:
         return value
-    return math.exp(value)
+    return math.exp(value) if value < _LARGEST_LOGARITHM else None

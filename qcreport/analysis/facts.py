@@ -5,7 +5,7 @@ from __future__ import annotations
 import datetime as dt
 from dataclasses import dataclass
 
-from qcreport.analysis.comparable import Comparable
+from qcreport.analysis.comparable import Comparable, all_equal
 from qcreport.plan.model import ComparisonPlan
 from qcreport.rules.evidence import Check, FactEvidence
 from qcreport.rules.facts import CANNOT_BE_JUDGED, EVERY_PAIR, WITH_THE_REFERENCE, Facts
@@ -39,7 +39,7 @@ def gather(ready: Comparable, plan: ComparisonPlan, rules: RulesTable, earliest:
     evidence.append(_censored(ready))
     spread, checks = _spread(ready, plan, rules, earliest)
     evidence.extend(
-        (spread, FactEvidence(fact="scale", value=plan.scale, observed="", source="Comparison plan"))
+        (spread, FactEvidence(fact="scale", value=plan.scale.value, observed="", source="Comparison plan"))
     )
     facts = Facts(
         comparison=evidence[0].value,
@@ -49,7 +49,7 @@ def gather(ready: Comparable, plan: ComparisonPlan, rules: RulesTable, earliest:
         variation=evidence[4].value,
         censored=evidence[5].value,
         spread=spread.value,
-        scale=plan.scale,
+        scale=plan.scale.value,
     )
     return Gathered(facts=facts, evidence=tuple(evidence), checks=checks)
 
@@ -87,7 +87,7 @@ def _sizes(sizes: list[int]) -> FactEvidence:
 
 def _variation(ready: Comparable) -> FactEvidence:
     value = "some" if ready.varies else "none"
-    still = [g.label for g, v in zip(ready.groups, ready.values, strict=True) if min(v) == max(v)]
+    still = [g.label for g, v in zip(ready.groups, ready.values, strict=True) if all_equal(v)]
     observed = f"All values of one group are equal: {', '.join(still)}." if still else ""
     return FactEvidence(fact="variation", value=value, observed=observed, source="Export")
 

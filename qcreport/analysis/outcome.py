@@ -35,6 +35,8 @@ class Question:
     """Family-wise error rate of this characteristic."""
     earliest: dt.date | None
     """Date of the earliest measurement."""
+    beside: bool = False
+    """True for what is asked beside the answer: only the answers are wanted, no planning of sizes."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -84,7 +86,12 @@ def _run(procedure: str, ready: Comparable, question: Question) -> tuple[Compari
         return None, f"{procedure} needs numbers, but some results are known only by a limit."
     try:
         comparison = compare(
-            procedure, ready, question.characteristic, alpha=question.alpha, scale=question.plan.scale
+            procedure,
+            ready,
+            question.characteristic,
+            alpha=question.alpha,
+            scale=question.plan.scale,
+            sizes=not question.beside,
         )
     except StatisticsError as error:
         return None, f"{procedure} cannot answer here: {error.text}"
@@ -102,7 +109,7 @@ def sensitivity(outcome: Outcome, question: Question) -> Sensitivity | None:
     procedure = choose(question.rules, facts).procedure
     if procedure == outcome.procedure:
         return None
-    other, _ = _run(procedure, outcome.ready, question)
+    other, _ = _run(procedure, outcome.ready, replace(question, beside=True))
     if other is None:
         return None
     return Sensitivity(procedure=procedure, changed=changed_answers(outcome.comparison.pairs, other.pairs))

@@ -46,8 +46,7 @@ def assemble(
         for r, sample in zip(readings, samples, strict=True)
     ]
     check_duplicates(readings, keys, sample_columns, notices)
-    cells = [(r.sheet.ref(r.row, r.time[0]), r.time[1]) if r.time is not None else None for r in readings]
-    times = read_times(book, cells, notices)
+    times = read_times(book, readings, notices)
     return tuple(
         Measurement(
             characteristic=reading.layout.characteristic,

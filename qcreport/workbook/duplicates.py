@@ -28,6 +28,9 @@ def check_duplicates(
     notices : NoticeBook
         Takes `duplicate_sample_ids`.
     """
+    judged = [key for key in keys if key[2] is not None]
+    if len(set(judged)) == len(judged):
+        return
     by_key: dict[Key, list[int]] = {}
     for index, key in enumerate(keys):
         if key[2] is not None:

@@ -39,7 +39,7 @@ class GroupCells:
         """Return the batch of a row: its own cell, the merged cell that covers it, or the one above."""
         cell = self._sheet.cell(row, column)
         if cell is not None:
-            self._last = self._read(cell, self._sheet.ref(row, column))
+            self._last = self._read(cell, row, column)
             return self._last
         merged = self._merged(row, column)
         if merged is not None:
@@ -55,7 +55,7 @@ class GroupCells:
         if column not in self._headings:
             cell = self._sheet.cell(row, column)
             if cell is not None:
-                self._headings[column] = self._read(cell, self._sheet.ref(row, column))
+                self._headings[column] = self._read(cell, row, column)
             else:
                 self._headings[column] = self._merged(row, column)
                 if self._headings[column] is not None:
@@ -69,7 +69,7 @@ class GroupCells:
         anchor = self._sheet.cell(area.first_row, area.first_column)
         if anchor is None:
             return None
-        return self._read(anchor, self._sheet.ref(area.first_row, area.first_column))
+        return self._read(anchor, area.first_row, area.first_column)
 
     def _has_merges(self, column: int) -> bool:
         """Return whether batches of a column stand in merged cells: then a gap is no repetition."""
@@ -82,13 +82,17 @@ class GroupCells:
             )
         return self._column_merges[column]
 
-    def _read(self, cell: Cell, ref: CellRef) -> Label:
+    def _read(self, cell: Cell, row: int, column: int) -> Label:
+        place = (self._sheet.name, row, column)
+        if cell.kind is Kind.TEXT and not cell.formula:
+            return Label(cell.text, place)
+        ref = self._sheet.ref(row, column)
         if cell.formula:
             if not cell.cached:
                 raise refuse_uncalculated([ref])
             self._notices.add("formula_results_used", ref)
         if cell.kind is Kind.TEXT:
-            return Label(cell.text, ref)
+            return Label(cell.text, place)
         if cell.kind is Kind.ERROR:
             raise refuse_errors([(ref, cell.text)])
         shown = None
@@ -96,9 +100,9 @@ class GroupCells:
             shown = self._book.number_format(cell).shown(cell.text)
         if shown is None:
             self.not_text.append((ref, cell.text))
-            return Label(cell.text, ref)
+            return Label(cell.text, place)
         self._notices.add("number_read_as_shown", ref)
-        return Label(shown, ref)
+        return Label(shown, place)
 
 
 def refuse_not_text(found: Sequence[tuple[CellRef, str]]) -> ExportRefusedError:

@@ -28,12 +28,10 @@ class Names:
 
     def __init__(self, labels: Iterable[Label], *, what: str, different: frozenset[str]) -> None:
         self._what, self._different = what, different
-        self._by_text: dict[str, list[Label]] = {}
-        seen: set[Label] = set()
+        by_text: dict[str, dict[Label, None]] = {}
         for label in labels:
-            if label not in seen:
-                seen.add(label)
-                self._by_text.setdefault(label.text, []).append(label)
+            by_text.setdefault(label.text, {})[label] = None
+        self._by_text = {text: tuple(found) for text, found in by_text.items()}
         self._final: dict[str, str] = {}
         self._merged_case: list[str] = []
         self._merge_case()

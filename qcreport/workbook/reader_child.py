@@ -7,6 +7,7 @@ at a byte of the export.
 
 from __future__ import annotations
 
+import gc
 import json
 import sys
 from collections.abc import Iterable
@@ -71,6 +72,7 @@ def main() -> int:
     """Answer the one request on standard input."""
     header = json.loads(sys.stdin.buffer.readline())
     limit_this_process(Limits(**header["limits"]))
+    gc.disable()  # nothing here makes cycles, and millions of cells would be looked through again and again
     data = sys.stdin.buffer.read()
     try:
         lines = read(header, data)

@@ -14,8 +14,16 @@ class Label(NamedTuple):
 
     text: str
     """As stored, or as the cell shows a number; not trimmed."""
-    ref: CellRef | None
-    """Where it stands; None for a sheet name, a file name or a constant."""
+    place: tuple[str | None, int, int] | None = None
+    """Sheet, row and column where it stands; None for a sheet name, a file name or a constant."""
+
+    @property
+    def ref(self) -> CellRef | None:
+        """The cell where it stands."""
+        if self.place is None:
+            return None
+        sheet, row, column = self.place
+        return CellRef(sheet=sheet, row=row, column=column)
 
 
 class Reading(NamedTuple):

@@ -31,21 +31,20 @@ class RowLabels:
     def _constant(self, name: str, source: Source) -> Label | None:
         """Return a name that is the same for all rows of the sheet."""
         if source.kind is SourceKind.CONSTANT:
-            return Label(source.constant or "", None)
+            return Label(source.constant or "")
         if source.kind is SourceKind.CELL and source.row is not None and source.column is not None:
             text = self._text(self._sheet.cell(source.row, source.column))
-            ref = self._sheet.ref(source.row, source.column)
             if text is None:
-                raise _refuse_empty_cell(name, ref)
-            return Label(text, ref)
+                raise _refuse_empty_cell(name, self._sheet.ref(source.row, source.column))
+            return Label(text, (self._sheet.name, source.row, source.column))
         whole = self._file if source.kind is SourceKind.FILE_NAME else self._sheet.name or ""
         if source.pattern is None:
-            return Label(whole, None)
+            return Label(whole)
         found = source.pattern.search(whole)
         text = (found.group(1) if found.re.groups else found.group(0)) if found else None
         if not text or not text.strip():
             raise _refuse_pattern(name, whole, source.pattern.pattern)
-        return Label(text.strip(), None)
+        return Label(text.strip())
 
     def _text(self, cell: Cell | None) -> str | None:
         shown = None
@@ -67,7 +66,7 @@ class RowLabels:
             text = self._groups.above(name)
         elif text is not None and self._sources[name].repeats_below:
             self._groups.remember(name, text)
-        return None if text is None else Label(text, self._sheet.ref(row, column))
+        return None if text is None else Label(text, (self._sheet.name, row, column))
 
     @property
     def not_text(self) -> list[tuple[CellRef, str]]:

@@ -9,7 +9,7 @@ import re
 from collections.abc import Callable, Iterable, Sequence
 
 from qcreport.workbook.cells import Cell, Kind
-from qcreport.workbook.places import MAX_COLUMN, MAX_ROW, Area, parse_area, parse_cell
+from qcreport.workbook.places import MAX_COLUMN, MAX_ROW, Area, parse_area, parse_column
 from qcreport.workbook.refusals import damaged, quoted
 from qcreport.workbook.rich_text import TextCollector, checked_text
 from qcreport.workbook.xml_stream import Attributes, is_on, main_tags, parse_xml
@@ -29,7 +29,17 @@ Strings = Sequence[tuple[str, bool]]
 
 
 class SheetScan:
-    """Collects the cells of one sheet from the parser's events."""
+    """Collects the cells of one sheet from the parser's events.
+
+    Three million cells may pass through `start` and `end`, so these two are written for speed.
+    """
+
+    __slots__ = (
+        "_cells", "_column", "_columns", "_count", "_filter", "_formula", "_has_value", "_in_cell",
+        "_in_data", "_inline", "_n_styles", "_pieces", "_reading", "_row", "_row_text", "_shared_cells",
+        "_strings", "_style", "_styles", "_type", "filters", "hidden_columns", "hidden_rows", "merges",
+        "rows",
+    )  # fmt: skip
 
     def __init__(self, strings: Strings, n_styles: int, count: Callable[[int, int], None]) -> None:
         self.rows: dict[int, dict[int, Cell]] = {}
@@ -38,10 +48,13 @@ class SheetScan:
         self.merges: list[Area] = []
         self.filters: list[Area] = []
         self._strings, self._n_styles, self._count = strings, n_styles, count
-        self._in_data = False
-        self._row = self._column = self._last_column = 0
+        self._columns: dict[str, int] = {}
+        self._styles: dict[str, int] = {"0": 0}
+        self._shared_cells: dict[tuple[str, int], Cell | None] = {}
+        self._in_data = self._in_cell = False
+        self._row = self._column = 0
+        self._row_text = ""
         self._cells: dict[int, Cell] = {}
-        self._in_cell = False
         self._type, self._style = "n", 0
         self._formula = self._has_value = self._reading = False
         self._pieces: list[str] = []
@@ -52,7 +65,15 @@ class SheetScan:
         """Take note of the start of an element."""
         tag = _TAGS.get(name)
         if tag == "c":
-            self._start_cell(attributes)
+            if not self._in_data or self._in_cell or self._row == 0:
+                raise damaged("A cell stands outside a row.")
+            self._column = self._place(attributes.get("r"))
+            self._in_cell = True
+            self._type = attributes.get("t", "n")
+            style = attributes.get("s", "0")
+            self._style = self._styles[style] if style in self._styles else self._new_style(style)
+            self._formula = self._has_value = False
+            self._pieces.clear()
         elif self._in_cell:
             self._start_in_cell(tag, attributes)
         elif tag == "row":
@@ -62,6 +83,23 @@ class SheetScan:
         elif tag is not None:
             self._start_beside(tag, attributes)
 
+    def _place(self, text: str | None) -> int:
+        """Return the column of a cell; one without a name follows its neighbour."""
+        if text is None:
+            if self._column >= MAX_COLUMN:
+                raise damaged(f"Row {self._row} has more than {MAX_COLUMN:,} columns.")
+            return self._column + 1
+        letters = text.removesuffix(self._row_text)
+        column = self._columns.get(letters) or parse_column(letters)
+        if column is None or len(letters) + len(self._row_text) != len(text):
+            raise damaged(f"A cell in row {self._row} is named {quoted(text)}.")
+        self._columns[letters] = column
+        return column
+
+    def _new_style(self, text: str) -> int:
+        self._styles[text] = self._index(text, self._n_styles, "style")
+        return self._styles[text]
+
     def _start_row(self, attributes: Attributes) -> None:
         if not self._in_data:
             return
@@ -69,31 +107,11 @@ class SheetScan:
         row = self._row + 1 if text is None else int(text) if text.isdigit() and text.isascii() else 0
         if not 1 <= row <= MAX_ROW:
             raise damaged(f"A row is numbered {text!r}.")
-        self._row, self._last_column = row, 0
+        self._row, self._column = row, 0
+        self._row_text = str(row)
         self._cells = self.rows.get(row, {})
         if is_on(attributes.get("hidden")) or attributes.get("ht") == "0":
             self.hidden_rows.add(row)
-
-    def _start_cell(self, attributes: Attributes) -> None:
-        if not self._in_data or self._in_cell or self._row == 0:
-            raise damaged("A cell stands outside a row.")
-        text = attributes.get("r")
-        if text is None:
-            self._column = self._last_column + 1
-        else:
-            place = parse_cell(text)
-            if place is None or place[0] != self._row:
-                raise damaged(f"A cell in row {self._row} is named {quoted(text)}.")
-            self._column = place[1]
-        if self._column > MAX_COLUMN:
-            raise damaged(f"Row {self._row} has more than {MAX_COLUMN:,} columns.")
-        self._last_column = self._column
-        self._in_cell = True
-        self._type = attributes.get("t", "n")
-        self._style = self._index(attributes.get("s", "0"), self._n_styles, "style")
-        self._formula = self._has_value = False
-        self._pieces = []
-        self._inline = None
 
     def _start_in_cell(self, tag: str | None, attributes: Attributes) -> None:
         if self._reading:
@@ -142,52 +160,60 @@ class SheetScan:
         if tag == "v":
             self._reading = False
         elif tag == "c":
-            self._end_cell()
+            cell = self._finished_cell()
+            self._in_cell = False
+            self._inline = None
+            if cell is not None:
+                if self._column in self._cells:
+                    raise damaged(f"Row {self._row} holds one cell twice.")
+                self._cells[self._column] = cell
         elif self._inline is not None:
             self._inline.end(tag)
         elif tag == "row" and self._in_data:
             if self._cells:
                 self.rows[self._row] = self._cells
+                self._count(len(self.rows), len(self._cells))
             self._cells = {}
         elif tag == "sheetData":
             self._in_data = False
             self._row = 0
 
-    def _end_cell(self) -> None:
-        cell = self._finished_cell()
-        self._in_cell = False
-        self._inline = None
-        if cell is None:
-            return
-        if self._column in self._cells:
-            raise damaged(f"Row {self._row} holds one cell twice.")
-        self._cells[self._column] = cell
-        self._count(len(self.rows) + 1, 1)
-
     def _finished_cell(self) -> Cell | None:
-        kind = _KINDS.get(self._type)
-        if kind is None:
-            raise damaged(f"A cell in row {self._row} is of the unknown kind {quoted(self._type)}.")
         if self._inline is not None:
+            kind = self._kind()
             text, struck = self._inline.finished(), self._inline.struck
             return Cell(kind, text, self._style, self._formula, True, struck) if text else None
         text = "".join(self._pieces)
-        if self._type == "s":
-            return self._shared(text)
-        if kind is Kind.NUMBER:
+        if self._type == "n":
             text = text.strip()
-        cached = self._has_value and (bool(text) or kind is Kind.TEXT)
+            if text or self._formula:
+                return Cell(Kind.NUMBER, checked_text(text), self._style, self._formula, bool(text))
+            return None
+        if self._type == "s":
+            return self._shared(text) if self._has_value else None
+        kind = self._kind()
         if not text and not self._formula:
             return None
+        cached = self._has_value and (bool(text) or kind is Kind.TEXT)
         return Cell(kind, checked_text(text), self._style, self._formula, cached)
 
+    def _kind(self) -> Kind:
+        kind = _KINDS.get(self._type)
+        if kind is None:
+            raise damaged(f"A cell in row {self._row} is of the unknown kind {quoted(self._type)}.")
+        return kind
+
     def _shared(self, text: str) -> Cell | None:
-        if not self._has_value:
-            return None
+        """Return the cell of a shared text; the same text in the same style is one object."""
+        key = (text, self._style)
+        if key in self._shared_cells and not self._formula:
+            return self._shared_cells[key]
         string, struck = self._strings[self._index(text.strip(), len(self._strings), "text")]
-        if not string and not self._formula:
-            return None
-        return Cell(Kind.TEXT, string, self._style, self._formula, True, struck)
+        if self._formula:
+            return Cell(Kind.TEXT, string, self._style, True, True, struck)
+        cell = Cell(Kind.TEXT, string, self._style, False, True, struck) if string else None
+        self._shared_cells[key] = cell
+        return cell
 
     def _index(self, text: str, length: int, what: str) -> int:
         index = int(text) if text.isdigit() and text.isascii() and len(text) < 10 else -1
@@ -209,7 +235,7 @@ def scan_sheet(
     n_styles: int,
     count: Callable[[int, int], None],
 ) -> SheetScan:
-    """Read one sheet; `count(rows so far, new cells)` is called for each filled cell and may refuse."""
+    """Read one sheet; `count(rows so far, new cells)` is called for each filled row and may refuse."""
     scan = SheetScan(strings, n_styles, count)
     parse_xml(chunks, part=part, start=scan.start, end=scan.end, text=scan.text)
     return scan

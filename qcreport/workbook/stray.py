@@ -6,7 +6,7 @@ from collections.abc import Sequence
 from typing import NamedTuple
 
 from qcreport.measurements import CellRef
-from qcreport.workbook.cells import Cell, Kind, Sheet
+from qcreport.workbook.cells import Kind, Sheet
 from qcreport.workbook.columns import TableColumns
 from qcreport.workbook.layout_model import Shape
 from qcreport.workbook.notices import NoticeBook
@@ -35,15 +35,18 @@ def note_stray_cells(
     for table in ordered:
         layout = table.columns.layout
         lost: list[CellRef] = []
+        own = _own_columns(table.columns)
         for row, cells in sheet.rows.items():
             if not layout.first_row <= row <= table.columns.last_row:
                 continue
             if row in table.used_rows:
-                _note_beside(sheet, table, row, notices)
+                if own is not None and not cells.keys() <= own:
+                    beside = [c for c, cell in cells.items() if c not in own and not cell.blank]
+                    _note(notices, [sheet.ref(row, column) for column in beside])
             elif not _is_heading_of_next(row, table, ordered):
                 refs = [sheet.ref(row, column) for column, cell in cells.items() if not cell.blank]
-                notices.add("stray_cells", *refs)
-                lost.extend(_lost_value(table, row, cells, known_groups))
+                _note(notices, refs)
+                lost.extend(_lost_value(table, row, known_groups))
         if lost:
             raise refused(
                 "layout_mismatch",
@@ -64,23 +67,26 @@ def _is_heading_of_next(row: int, table: WalkedTable, ordered: Sequence[WalkedTa
     return any(0 < top - row <= 3 for top in tops)
 
 
-def _note_beside(sheet: Sheet, table: WalkedTable, row: int, notices: NoticeBook) -> None:
-    """Note cells of a table's row that stand under no heading, or in a further column of batches."""
-    columns = table.columns
+def _note(notices: NoticeBook, refs: Sequence[CellRef]) -> None:
+    if refs:
+        notices.add("stray_cells", *refs)
+
+
+def _own_columns(columns: TableColumns) -> frozenset[int] | None:
+    """Return the columns that a table accounts for; None where it has no headings to tell.
+
+    Any column under a heading is accounted for, except in a wide table, where it may be a further batch.
+    """
     if not columns.layout.header_rows:
-        return
-    wide = columns.layout.shape is Shape.WIDE
+        return None
     own = {*columns.sources.values(), *(c for _, value_columns in columns.values for c in value_columns)}
     own.update(value.unit_column for value, _ in columns.values if value.unit_column is not None)
-    for column, cell in sheet.rows[row].items():
-        if column in own or cell.blank or (not wide and column in columns.headings.texts):
-            continue
-        notices.add("stray_cells", sheet.ref(row, column))
+    if columns.layout.shape is not Shape.WIDE:
+        own.update(columns.headings.texts)
+    return frozenset(own)
 
 
-def _lost_value(
-    table: WalkedTable, row: int, cells: Sequence[Cell] | object, known_groups: frozenset[str]
-) -> list[CellRef]:
+def _lost_value(table: WalkedTable, row: int, known_groups: frozenset[str]) -> list[CellRef]:
     sources, sheet = table.columns.sources, table.columns.sheet
     if "group" not in sources or "sample" not in sources:
         return []

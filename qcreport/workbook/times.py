@@ -4,11 +4,11 @@ from __future__ import annotations
 
 import datetime as dt
 import re
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 
-from qcreport.measurements import CellRef
 from qcreport.workbook.cells import Book, Cell, Kind
 from qcreport.workbook.notices import NoticeBook
+from qcreport.workbook.readings import Reading
 from qcreport.workbook.sheet_xml import is_stored_number
 
 _CLOCK = r"(?:[T ,]+([0-9]{1,2}):([0-9]{2})(?::([0-9]{2})(?:[.,][0-9]+)?)?\s*([AaPp][Mm])?)?"
@@ -35,31 +35,30 @@ def serial_time(serial: float, *, date_1904: bool) -> dt.datetime | None:
         return None
 
 
-def read_times(
-    book: Book, cells: Sequence[tuple[CellRef, Cell] | None], notices: NoticeBook
-) -> list[str | None]:
+def read_times(book: Book, readings: Sequence[Reading], notices: NoticeBook) -> list[str | None]:
     """Return the times in ISO 8601 without zone, None where there is none or it can be read in two ways."""
-    day_first = _slashed_order([pair[1].text.strip() for pair in cells if pair is not None])
-    known: dict[tuple[str, str, int], str | None] = {}
+    texts = {reading.time[1].text.strip() for reading in readings if reading.time is not None}
+    day_first = _slashed_order(texts)
+    known: dict[tuple[Kind, str, int], str | None] = {}
     times: list[str | None] = []
-    for pair in cells:
-        if pair is None:
+    for reading in readings:
+        if reading.time is None:
             times.append(None)
             continue
-        ref, cell = pair
-        key = (cell.kind.value, cell.text, cell.style)
+        column, cell = reading.time
+        key = (cell.kind, cell.text, cell.style)
         if key not in known:
             found = _read_time(book, cell, day_first=day_first)
             known[key] = None if found is None else found.isoformat()
         times.append(known[key])
         if known[key] is None:
-            notices.add("time_ambiguous", ref)
+            notices.add("time_ambiguous", reading.sheet.ref(reading.row, column))
         elif cell.kind is Kind.NUMBER and book.date_1904:
-            notices.add("date_system_1904", ref)
+            notices.add("date_system_1904", reading.sheet.ref(reading.row, column))
     return times
 
 
-def _slashed_order(texts: Sequence[str]) -> bool | None:
+def _slashed_order(texts: Collection[str]) -> bool | None:
     """Return whether the day comes first in dates such as 03/04/2026; None where nothing decides it."""
     found = [match for text in texts if (match := _SLASHED.fullmatch(text))]
     first = any(int(match.group(1)) > _MONTHS for match in found)

@@ -86,15 +86,15 @@ def refuse_mixed_marks(
     )
 
 
-def refuse_mixed_percent(percent: Sequence[CellRef], plain: Sequence[CellRef]) -> ExportRefusedError:
+def refuse_mixed_percent(percent: CellRef, plain: CellRef) -> ExportRefusedError:
     """Return the refusal of a column where percent cells stand beside plain numbers."""
     return refused(
         "mixed_number_formats",
-        where=cells_in_words([percent[0], plain[0]]),
-        found=f"{percent[0]} is a percent cell (stored as a fraction) and {plain[0]} a plain number.",
+        where=cells_in_words([percent, plain]),
+        found=f"{percent} is a percent cell (stored as a fraction) and {plain} a plain number.",
         expected="One way of writing percent in the whole column.",
         next_step="Give all cells of the column the same format, with values that fit it, and drop it again.",
-        cells=[str(percent[0]), str(plain[0])],
+        cells=[str(percent), str(plain)],
     )
 
 

@@ -7,7 +7,7 @@ export; nothing is guessed from the size of a number.
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from decimal import Decimal
 from typing import NamedTuple
 
@@ -55,8 +55,8 @@ class ValueReader:
         self._not_detected = {text.casefold() for text in forms.not_detected}
         self._values: dict[int, Value] = {}
         self._texts: dict[int, TextValue] = {}
-        self._percent: list[CellRef] = []
-        self._plain: list[CellRef] = []
+        self._percent: list[Reading] = []
+        self._plain: list[Reading] = []
         self._unreadable: list[tuple[CellRef, str]] = []
         self._errors: list[tuple[CellRef, str]] = []
         self._uncalculated: list[CellRef] = []
@@ -84,18 +84,15 @@ class ValueReader:
         if not cell.cached:
             self._uncalculated.append(reading.ref)
             return
-        take: dict[Kind, Callable[[int, Reading, Cell], None]] = {
-            Kind.NUMBER: self._take_number,
-            Kind.TEXT: self._take_text,
-            Kind.ERROR: self._take_error,
-            Kind.BOOLEAN: self._take_other,
-            Kind.DATE: self._take_other,
-        }
-        take[cell.kind](index, reading, cell)
-
-    def _take_other(self, index: int, reading: Reading, cell: Cell) -> None:
-        what = {"1": "TRUE", "0": "FALSE"}.get(cell.text, cell.text)
-        self._unreadable.append((reading.ref, f"{what}, a date" if cell.kind is Kind.DATE else what))
+        if cell.kind is Kind.NUMBER:
+            self._take_number(index, reading, cell)
+        elif cell.kind is Kind.TEXT:
+            self._take_text(index, reading, cell)
+        elif cell.kind is Kind.ERROR:
+            self._take_error(index, reading, cell)
+        else:
+            what = {"1": "TRUE", "0": "FALSE"}.get(cell.text, cell.text)
+            self._unreadable.append((reading.ref, f"{what}, a date" if cell.kind is Kind.DATE else what))
 
     def _take_error(self, index: int, reading: Reading, cell: Cell) -> None:
         error = cell.text.strip().upper()
@@ -116,10 +113,10 @@ class ValueReader:
         elif number_format.divides:
             self._unreadable.append((reading.ref, f"{cell.text}, shown divided by a thousand or more"))
         elif number_format.percent:
-            self._percent.append(reading.ref)
+            self._percent.append(reading)
             self._values[index] = _percent_value(number, number_format.decimals)
         else:
-            self._plain.append(reading.ref)
+            self._plain.append(reading)
             fixed = number_format.decimals
             self._values[index] = Value(number, _shown_decimals(number) if fixed is None else fixed, None)
 
@@ -144,9 +141,9 @@ class ValueReader:
         if self._unreadable:
             raise refuse_unreadable(self._unreadable)
         if self._percent and "%" not in self._unit:
-            raise refuse_percent_unit(self._percent, self._unit)
+            raise refuse_percent_unit([r.ref for r in self._percent], self._unit)
         if self._percent and self._plain:
-            raise refuse_mixed_percent(self._percent, self._plain)
+            raise refuse_mixed_percent(self._percent[0].ref, self._plain[0].ref)
 
     def _read_texts(self, texts: dict[int, tuple[CellRef, TextValue]]) -> dict[int, Value]:
         found: dict[int, Value] = {}
@@ -161,10 +158,9 @@ class ValueReader:
                 continue
             found[index] = Value(value, number.decimals, parts.censored)
             self._note_text(ref, parts, comma=number.comma, grouped=number.grouped)
-        if self._percent and any(not parts.unit for _, parts in texts.values()):
-            raise refuse_mixed_percent(
-                self._percent, [ref for ref, parts in texts.values() if not parts.unit]
-            )
+        without_sign = [ref for ref, parts in texts.values() if not parts.unit]
+        if self._percent and without_sign:
+            raise refuse_mixed_percent(self._percent[0].ref, without_sign[0])
         return found
 
     def _note_text(self, ref: CellRef, parts: TextValue, *, comma: bool, grouped: bool) -> None:

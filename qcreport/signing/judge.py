@@ -37,7 +37,8 @@ class _Raw:
     chained: bool = False
     covers_entire_file: bool = False
     later_changes_allowed: bool = False
-    time_stamped: bool = False
+    stamped_at: datetime | None = None
+    stamp_trusted: bool = False
     problem: str | None = None
 
 
@@ -61,7 +62,7 @@ def judge(
         kind=kind,
         signer=_signer(certificate),
         fingerprint_sha256=certificate.sha256.hex() if certificate is not None else None,
-        signed_at=stated,
+        signed_at=raw.stamped_at or stated,
         meaning=_text(signature, "/Reason"),
         location=_text(signature, "/Location"),
         intact=raw.intact,
@@ -69,9 +70,9 @@ def judge(
         trusted=None if roots is None else raw.valid and raw.chained and in_time,
         covers_entire_file=raw.covers_entire_file,
         later_changes_allowed=raw.later_changes_allowed,
-        time_stamped=raw.time_stamped,
+        time_stamped=raw.stamped_at is not None,
         problems=problems,
-        notes=tuple(_notes(certificate, moment, at, raw)),
+        notes=tuple(_notes(certificate, moment, at, raw, roots)),
     )
 
 
@@ -100,7 +101,7 @@ def _validated(
         return _Raw(problem="the signature is damaged or has a form that cannot be checked")
     stamp = status.timestamp_validity
     stamped = stamp is not None and stamp.intact and stamp.valid
-    found = None if stamp is None or stamped else "the time stamp in the signature is not intact"
+    damaged = stamp is not None and not stamped
     return _Raw(
         intact=status.intact,
         valid=status.valid,
@@ -108,8 +109,9 @@ def _validated(
         covers_entire_file=status.coverage == SignatureCoverageLevel.ENTIRE_FILE,
         later_changes_allowed=bool(status.docmdp_ok)
         and not isinstance(status.diff_result, SuspiciousModification),
-        time_stamped=stamped,
-        problem=found or _fault(status),
+        stamped_at=stamp.timestamp.astimezone(UTC) if stamp is not None and stamped else None,
+        stamp_trusted=stamp is not None and stamp.trusted,
+        problem="the time stamp in the signature is not intact" if damaged else _fault(status),
     )
 
 
@@ -122,7 +124,8 @@ def _from_stamp(signature: EmbeddedPdfSignature, status: Any) -> _Raw:
         chained=status.trusted,
         covers_entire_file=changes["coverage"] == SignatureCoverageLevel.ENTIRE_FILE,
         later_changes_allowed=bool(changes["docmdp_ok"]),
-        time_stamped=status.intact and status.valid,
+        stamped_at=status.timestamp.astimezone(UTC) if status.intact and status.valid else None,
+        stamp_trusted=status.trusted,
         problem=_fault(status),
     )
 
@@ -146,9 +149,11 @@ def _problems(
         yield f"its stated time, {stated:%Y-%m-%d %H:%M UTC}, lies in the future"
 
 
-def _notes(certificate: Any, moment: datetime, at: datetime, raw: _Raw) -> Iterator[str]:
-    if not raw.time_stamped:
+def _notes(certificate: Any, moment: datetime, at: datetime, raw: _Raw, roots: Roots | None) -> Iterator[str]:
+    if raw.stamped_at is None:
         yield "the time is the signer's own statement"
+    elif roots is not None and not raw.stamp_trusted:
+        yield "the authority of its time stamp does not lead to a given root"
     if certificate is None:
         return
     if not _in_time(certificate, moment):
@@ -182,7 +187,7 @@ def _signer(certificate: Any) -> str | None:
 
 
 def _text(signature: EmbeddedPdfSignature, key: str) -> str | None:
-    value = _attempt(lambda: signature.sig_object.get(key))
+    value = _attempt(lambda: signature.sig_object[key])
     return str(value) if isinstance(value, str) else None
 
 

@@ -21,5 +21,5 @@ def pades_level(opened: OpenedPdf, seal: SignatureStatus, others: tuple[Signatur
 
 
 def _has_validation_data(opened: OpenedPdf) -> bool:
-    store = opened.reader.root.get("/DSS") or {}
-    return any(key in store for key in ("/Certs", "/OCSPs", "/CRLs"))
+    root = opened.reader.root
+    return "/DSS" in root and any(key in root["/DSS"] for key in ("/Certs", "/OCSPs", "/CRLs"))

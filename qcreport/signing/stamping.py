@@ -14,6 +14,7 @@ from pyhanko.keys.internal import translate_pyca_cryptography_cert_to_asn1
 from pyhanko.pdf_utils import generic
 from pyhanko.pdf_utils.incremental_writer import IncrementalPdfFileWriter
 from pyhanko.sign.signers import PdfSignatureMetadata, PdfSigner, SimpleSigner
+from pyhanko.sign.timestamps import TimeStamper
 from pyhanko.stamp import BaseStampStyle
 from pyhanko_certvalidator.registry import SimpleCertificateStore
 
@@ -74,8 +75,14 @@ class HeldKeySigner(SimpleSigner):
 class TimedSigner(PdfSigner):
     """Write the given time, not the clock's, as the claimed time of signing."""
 
-    def __init__(self, metadata: PdfSignatureMetadata, signer: HeldKeySigner, at: datetime) -> None:
-        super().__init__(metadata, signer=signer, stamp_style=KeepAppearance())
+    def __init__(
+        self,
+        metadata: PdfSignatureMetadata,
+        signer: HeldKeySigner,
+        at: datetime,
+        timestamper: TimeStamper | None = None,
+    ) -> None:
+        super().__init__(metadata, signer=signer, timestamper=timestamper, stamp_style=KeepAppearance())
         self._at = at
 
     def init_signing_session(self, pdf_out: Any, existing_fields_only: bool = False) -> Any:

@@ -28,7 +28,7 @@ class SignatureStatus:
     fingerprint_sha256: str | None
     """SHA-256 of the certificate, hexadecimal."""
     signed_at: datetime | None
-    """UTC; the signer's own statement, unless `time_stamped`."""
+    """UTC; the time of its time stamp, else the signer's own statement."""
     meaning: str | None
     """Stated reason of signing."""
     location: str | None

@@ -4,10 +4,13 @@ from __future__ import annotations
 
 import datetime as dt
 import socket
+from io import BytesIO
 
+import pikepdf
 import pytest
 
 from qcreport.errors import NotOurReportError
+from qcreport.signing import reading
 from qcreport.signing.inspect import inspect_pdf
 from qcreport.signing.keys import SigningKey
 from qcreport.signing.reading import open_sealed, sealed_revision
@@ -127,18 +130,21 @@ def test_a_flipped_byte_anywhere_is_found(sealed: bytes, service_key: SigningKey
         assert reasons_against(bytes(damaged), service_key), f"byte {place} of {len(sealed)}"
 
 
-@pytest.mark.parametrize("place", [41, 537, 539])
-def test_bytes_that_the_signature_library_skips_are_found(
-    sealed: bytes, service_key: SigningKey, place: int
-) -> None:
+def test_bytes_that_the_signature_library_skips_are_found(sealed: bytes, service_key: SigningKey) -> None:
     """Parts of the signature's own frame that are neither signed nor needed to check it."""
-    content = open_sealed(sealed).seal.pkcs7_content
-    first = int(open_sealed(sealed).seal.byte_range[1]) + 1
-    for change in (1, 2, 4):
-        other = bytearray(content)
-        other[place] ^= change
-        forged = sealed[:first] + bytes(other).hex().upper().encode() + sealed[first + 2 * len(content) :]
-        assert reasons_against(forged, service_key)
+    seal_found = open_sealed(sealed).seal
+    content, signer = seal_found.pkcs7_content, seal_found.signer_info
+    digest = content.index(signer["digest_algorithm"].dump())
+    version = content.index(signer.dump()) + len(signer.dump()) - len(signer.contents)
+    room = content.rindex(b"\0" * 8)
+    places = {"parameters of the digest": digest + 13, "version": version + 2, "room": room}
+    first = int(seal_found.byte_range[1]) + 1
+    for what, place in places.items():
+        for change in (1, 2, 4):
+            other = bytearray(content)
+            other[place] ^= change
+            forged = sealed[:first] + bytes(other).hex().upper().encode() + sealed[first + 2 * len(content) :]
+            assert reasons_against(forged, service_key), what
 
 
 def test_digits_written_in_another_way_are_found(sealed: bytes, service_key: SigningKey) -> None:
@@ -233,6 +239,39 @@ def test_a_seal_set_after_something_else_is_not_ours(
 def test_an_unsealed_report_is_none(rendered: bytes) -> None:
     with pytest.raises(NotOurReportError, match="no seal"):
         inspect_pdf(rendered, roots=None, at=LATER)
+
+
+def test_an_encrypted_pdf_is_refused(sealed: bytes) -> None:
+    out = BytesIO()
+    with pikepdf.open(BytesIO(sealed)) as document:
+        document.save(out, encryption=pikepdf.Encryption(owner="owner", user=""))
+    with pytest.raises(NotOurReportError, match="encrypted"):
+        inspect_pdf(out.getvalue(), roots=None, at=LATER)
+
+
+def test_more_signatures_or_bytes_than_any_report_has_are_refused(
+    sealed: bytes, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    with monkeypatch.context() as patched:
+        patched.setattr(reading, "MOST_SIGNATURES", 0)
+        with pytest.raises(NotOurReportError, match="carries 1 signatures"):
+            inspect_pdf(sealed, roots=None, at=LATER)
+    monkeypatch.setattr(reading, "LARGEST_PDF", len(sealed) - 1)
+    with pytest.raises(NotOurReportError, match="larger than"):
+        inspect_pdf(sealed, roots=None, at=LATER)
+
+
+@pytest.mark.parametrize("numbers", ["[1 %d %d %d]", "[0 %d 9%d %d]", "[0 %d %d]"])
+def test_a_seal_that_covers_another_stretch_is_refused(sealed: bytes, numbers: str) -> None:
+    _, *stated = map(int, open_sealed(sealed).seal.byte_range)
+    place = sealed.rindex(b"/ByteRange")
+    end = sealed.index(b"]", place) + 1
+    written = (numbers % tuple(stated[: numbers.count("%d")])).encode()
+    start = sealed.index(b"[", place)
+    assert len(written) <= end - start + 1
+    forged = sealed[:start] + written.ljust(end - start) + sealed[start + max(len(written), end - start) :]
+    with pytest.raises(NotOurReportError, match="cannot be read"):
+        inspect_pdf(forged, roots=None, at=LATER)
 
 
 @pytest.mark.parametrize("share", [0.05, 0.3, 0.6, 0.9, 0.999])

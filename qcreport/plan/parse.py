@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import re
+from collections.abc import Sequence
 from typing import Final
 
 from qcreport.plan.model import (
@@ -47,11 +48,12 @@ def parse_plan(data: bytes, file: str) -> ComparisonPlan:
     if name and not _NAME.fullmatch(name):
         top.fault("name", "must be letters, digits, '.', '_' or '-', at most 64 characters")
     exports = top.texts("exports")
-    if not exports:
-        top.fault("exports" if "exports" in top else None, "name at least one file-name pattern in exports")
+    if "exports" in top and not all(p.strip() for p in exports or ("",)):
+        top.fault("exports", "name at least one file-name pattern, none of them blank")
     comparison = top.table("comparison")
     scale = Scale(_choice(comparison, "scale", [s.value for s in Scale], Scale.AS_MEASURED))
-    characteristics = tuple(_characteristic(t, scale) for t in top.tables("characteristic"))
+    readers = top.tables("characteristic")
+    characteristics = tuple(_characteristic(t, scale) for t in readers)
     plan = ComparisonPlan(
         name=name,
         title=top.text("title"),
@@ -73,6 +75,7 @@ def parse_plan(data: bytes, file: str) -> ComparisonPlan:
         characteristics=characteristics,
     )
     _cross_checks(top, comparison, plan)
+    _named_once(readers, characteristics)
     source.finish()
     return plan
 
@@ -166,12 +169,20 @@ def _margin_size(table: TableReader, key: str, scale: Scale, target: float | Non
     if isinstance(value, bool) or not isinstance(value, (int, float)):
         table.fault(key, f'must be a number or a percentage such as "5 %", found {value!r}')
         return None
-    return _positive(table, key, float(value), 1.0 if scale is Scale.LOG else 0.0)
+    return _positive(table, key, _double(value), 1.0 if scale is Scale.LOG else 0.0)
+
+
+def _double(value: float) -> float:
+    """Return a number as a double; infinite where a whole number lies beyond its range."""
+    try:
+        return float(value)
+    except OverflowError:
+        return math.inf
 
 
 def _positive(table: TableReader, key: str, size: float, least: float) -> float | None:
     if not (math.isfinite(size) and size > least):
-        what = "a ratio greater than 1" if least else "greater than 0"
+        what = "a ratio greater than 1" if least else "a finite number greater than 0"
         table.fault(key, f"must be {what}, found {size:g}")
         return None
     return size
@@ -181,9 +192,6 @@ def _cross_checks(top: TableReader, comparison: TableReader, plan: ComparisonPla
     """Note what each key alone cannot show."""
     if not plan.characteristics:
         top.fault(None, "name at least one [[characteristic]]")
-    names = [c.name for c in plan.characteristics]
-    for name in sorted({n for n in names if names.count(n) > 1}):
-        top.fault("characteristic", f"{name!r} is named twice")
     if plan.procedure in WITH_REFERENCE and plan.reference is None:
         comparison.fault("procedure", f"{plan.procedure} needs a reference")
     fixed_pairs = plan.procedure not in (BY_RULES, "none", "nested") and plan.procedure not in WITH_REFERENCE
@@ -191,3 +199,11 @@ def _cross_checks(top: TableReader, comparison: TableReader, plan: ComparisonPla
         comparison.fault("procedure", f"{plan.procedure} compares every pair, but a reference is set")
     if plan.groups is Groups.BATCH and plan.independent_unit is Unit.BATCH:
         comparison.fault("independent_unit", "batches cannot be the unit where batches are compared")
+
+
+def _named_once(readers: Sequence[TableReader], characteristics: Sequence[CharacteristicPlan]) -> None:
+    seen: set[str] = set()
+    for reader, characteristic in zip(readers, characteristics, strict=True):
+        if characteristic.name and characteristic.name in seen:
+            reader.fault("name", f"{characteristic.name!r} is named twice")
+        seen.add(characteristic.name)

@@ -111,7 +111,15 @@ class Records(Lookups):
             )
 
     def duplicate(self, claim: str, *, export_sha256: str, name: str, run: Run, actor: str) -> Entry:
-        """Record that an export was answered before and nothing new is written."""
+        """Record that an export was answered before and nothing new is written.
+
+        Where it was this very claim that sealed the run, and only its end was lost in a kill, that entry is
+        returned: an export does not become its own duplicate.
+        """
+        with self.database.read() as connection:
+            own = ledger.entry_of(connection, Kind.SEALED, Step(claim=claim, subject=run.number))
+        if own is not None:
+            return own
         facts = {"claim": claim, "name": name, "export_sha256": export_sha256}
         facts |= {"plan": run.plan_name, "number": run.number}
         return self.note(Kind.DUPLICATE, facts, actor=actor, step=Step(claim=claim, subject=run.number))

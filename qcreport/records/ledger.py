@@ -44,7 +44,7 @@ def append(
         For facts with floats or other things JSON does not have.
     """
     if step is not None:
-        earlier = _entry_of(connection, kind, step)
+        earlier = entry_of(connection, kind, step)
         if earlier is not None:
             return earlier
     previous = head(connection)
@@ -77,7 +77,8 @@ def entries(
         yield _entry(row)
 
 
-def _entry_of(connection: Connection, kind: Kind, step: Step) -> Entry | None:
+def entry_of(connection: Connection, kind: Kind, step: Step) -> Entry | None:
+    """Return the entry that a step wrote, or None."""
     query = (
         select(LEDGER)
         .join(ONCE, ONCE.c.sequence == LEDGER.c.sequence)

@@ -95,6 +95,7 @@ class Service:
         self._handling = Handling(settings, self._claims, process, tell)
         self._counts = Counts()
         self._snapshot: Snapshot = ()
+        self._in_inbox = 0
         self._pending: list[Claim] = []
         self._not_before: dict[str, float] = {}
         self._once = False
@@ -155,7 +156,7 @@ class Service:
                 claim = self._claims.take(self._settings.inbox, still.seen)
                 if claim is not None:
                     self._pending.append(claim)
-                self._snapshot = tuple(s for s in self._snapshot if s is not still)
+                    self._in_inbox -= 1
                 took = self._handle_pending() or took
         self._count()
         return took
@@ -208,6 +209,7 @@ class Service:
         self._claims.forget_others(listing)
         waiting = [seen for seen in listing if not self._claims.is_taken(seen)]
         self._snapshot = observe(self._snapshot, waiting, self._monotonic())
+        self._in_inbox = len(waiting)
         self._count()
         return True
 
@@ -291,6 +293,6 @@ class Service:
             self._watching = None
 
     def _count(self) -> None:
-        waiting = len(self._snapshot) + len(self._pending)
+        waiting = self._in_inbox + len(self._pending)
         self._counts = replace(self._counts, waiting=waiting)
         self._progress(self._counts)

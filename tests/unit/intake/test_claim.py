@@ -14,6 +14,7 @@ from qcreport.canonical import sha256_hex
 from qcreport.errors import EnvironmentFailedError
 from qcreport.intake.claim import Claims, new_claim_id
 from qcreport.intake.exports import StillChangingError
+from qcreport.intake.files import read_at_most
 from qcreport.intake.journal import Claim, ClaimMode
 from qcreport.intake.listing import scan
 
@@ -270,6 +271,89 @@ def test_a_claim_without_a_readable_journal_is_kept_aside(
     assert claims.leftovers() == ()
     assert (tmp_path / "work/failed" / claim.id / "original").read_bytes() == b"data"
     assert not (tmp_path / "work/claims/begun").exists()
+
+
+def _denied(*_: object, **__: object) -> None:
+    raise PermissionError(errno.EACCES, "Permission denied")
+
+
+@pytest.mark.parametrize("copies", [False, True])
+def test_a_file_that_must_not_be_read_is_refused_and_stops_nobody(
+    claims: Claims, inbox: Path, monkeypatch: pytest.MonkeyPatch, copies: bool
+) -> None:
+    drop(inbox, b"data")
+    if copies:
+        cannot_move(monkeypatch)
+    with monkeypatch.context() as patch:
+        patch.setattr("qcreport.intake.exports.open_plain", _denied)
+        export = claims.load(taken(claims, inbox))
+    assert export.refusal is not None
+    assert export.refusal.code == "damaged_or_incomplete"
+    assert (export.data, export.size) == (None, 4)
+
+
+def _remove(path: Path) -> None:
+    path.unlink()
+
+
+def _pipe(path: Path) -> None:
+    path.unlink()
+    os.mkfifo(path)
+
+
+@pytest.mark.parametrize("change", [_remove, _pipe])
+def test_a_file_that_goes_while_it_is_copied_is_not_taken(
+    claims: Claims, inbox: Path, monkeypatch: pytest.MonkeyPatch, change: Callable[[Path], None]
+) -> None:
+    path = drop(inbox, b"data")
+
+    def rename(self: Path, _target: Path) -> Path:
+        change(path)
+        raise OSError(errno.EXDEV, "Invalid cross-device link")
+
+    monkeypatch.setattr(Path, "rename", rename)
+    assert claims.take(inbox, only(inbox)) is None
+    assert list((inbox.parent / "work/claims").iterdir()) == []
+
+
+def test_a_file_that_shrinks_while_it_is_read_is_waited_for(
+    claims: Claims, inbox: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    drop(inbox, b"data")
+    claim = taken(claims, inbox)
+    with monkeypatch.context() as patch:
+        patch.setattr("qcreport.intake.exports.read_at_most", lambda _descriptor, _size: b"da")
+        with pytest.raises(StillChangingError):
+            claims.load(claim)
+    assert claims.load(claim).data == b"data"
+
+
+def test_reading_ends_where_the_file_does(inbox: Path) -> None:
+    with drop(inbox, b"data").open("rb") as stream:
+        assert read_at_most(stream.fileno(), 100) == b"data"
+
+
+def test_copies_left_by_a_kill_are_remembered_and_what_was_handled_is_cleared(
+    claims: Claims, inbox: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    drop(inbox, b"data")
+    cannot_move(monkeypatch)
+    claim = taken(claims, inbox)
+    shutil.rmtree(inbox.parent / "work/taken")
+    claim.folder.with_name(".gone-job-0").mkdir()
+    again = make_claims(inbox.parent)
+    assert not again.is_taken(only(inbox))
+    assert [left.id for left in again.leftovers()] == [claim.id]
+    assert again.is_taken(only(inbox))
+    assert [path.name for path in claim.folder.parent.iterdir()] == [claim.id]
+
+
+def test_an_original_that_is_gone_has_no_successor(claims: Claims, inbox: Path) -> None:
+    drop(inbox, b"data")
+    claim = taken(claims, inbox)
+    claims.load(claim)
+    claim.original.unlink()
+    assert claims.finish(claim) is None
 
 
 class Killed(BaseException):

@@ -109,6 +109,21 @@ def test_a_large_file_is_copied_where_it_cannot_be_linked(
     assert sorted(path.name for path in folder.iterdir()) == ["export.xlsx", "why.txt"]
 
 
+def test_a_disk_that_refuses_the_link_is_told(
+    claims: Claims, inbox: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def full(*_: object, **__: object) -> None:
+        raise OSError(errno.ENOSPC, "No space left on device")
+
+    export = claimed(claims, inbox, b"x" * 1001)
+    with monkeypatch.context() as patch:
+        patch.setattr(os, "link", full)
+        with pytest.raises(EnvironmentFailedError, match="No space left"):
+            put_refused(tmp_path / "refused", export, error(), DAY)
+    folder = put_refused(tmp_path / "refused", export, error(), DAY)
+    assert (folder / "export.xlsx").exists()
+
+
 def test_a_link_is_not_carried_over(claims: Claims, inbox: Path, tmp_path: Path) -> None:
     (inbox / "export.xlsx").write_bytes(b"data")
     claim = claims.take(inbox, only(inbox))

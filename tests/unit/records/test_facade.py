@@ -234,6 +234,18 @@ def test_a_duplicate_names_the_number_that_answered(records: Records, tmp_path: 
     assert Counter(kinds(records))["duplicate"] == 1
 
 
+def test_an_export_does_not_become_its_own_duplicate(records: Records, tmp_path: Path) -> None:
+    handling = Handling(records)
+    handling.whole(tmp_path / "reports")
+    run = handling.reserve().run
+    digest = sha256_hex(b"export")
+    entry = records.duplicate(
+        handling.claim, export_sha256=digest, name="export.xlsx", run=run, actor="service"
+    )
+    assert entry.kind == "sealed"
+    assert "duplicate" not in kinds(records)
+
+
 def test_received_again_tells_the_first_time_and_the_runs(
     records: Records, tmp_path: Path, clock: SetClock
 ) -> None:

@@ -10,12 +10,13 @@ from pathlib import Path
 import pytest
 
 from qcreport.errors import ConfigError, EnvironmentFailedError, ExportRefusedError, Fault, LedgerError
+from qcreport.intake.claim import Claims
 from qcreport.intake.exports import ClaimedExport
 from qcreport.intake.listing import Seen, scan
 from qcreport.service.model import Event, EventKind, Outcome, OutcomeKind
 from qcreport.service.stopping import StopNowError
 
-from .world import World
+from .world import NOON, World
 
 
 @pytest.fixture
@@ -310,6 +311,38 @@ def test_a_stop_in_the_middle_keeps_the_claim_for_the_next_start(world: World) -
     assert next_start.handled == [("a.xlsx", b"data"), ("b.xlsx", b"data")]
 
 
+def test_a_stop_between_two_claims_of_an_earlier_process_keeps_the_second(world: World) -> None:
+    earlier = Claims(world.root / "work", max_bytes=1000, clock=lambda: NOON)
+    for name in ("a.xlsx", "b.xlsx"):
+        world.drop(name)
+        assert earlier.take(world.inbox, scan(world.inbox)[0]) is not None
+
+    def process(export: ClaimedExport) -> Outcome:
+        world.stop.request()
+        return world.report(export)
+
+    world.process = process
+    world.run()
+    assert len(world.handled) == 1
+    assert len(left(world)) == 1
+
+
+def test_a_file_that_changes_while_it_is_looked_at_is_taken_later(world: World) -> None:
+    path = world.drop("a.xlsx", b"first")
+    looks: list[bytes] = []
+
+    def looks_complete(data: bytes) -> bool:
+        if not looks:
+            path.write_bytes(b"and more")
+        looks.append(data)
+        return True
+
+    world.looks_complete = looks_complete
+    world.run(once=True)
+    assert world.handled == [("a.xlsx", b"and more")]
+    assert looks == [b"first", b"and more"]
+
+
 def test_a_late_writer_gets_its_file_handled_again(world: World) -> None:
     stream = world.drop("a.xlsx", b"first").open("ab")
 
@@ -409,8 +442,6 @@ def test_a_kill_around_the_work_repeats_it_for_the_same_claim(
     def finish(self: object, claim: object) -> None:
         kill("finish")
         return real(self, claim)
-
-    from qcreport.intake.claim import Claims
 
     real = Claims.finish
     monkeypatch.setattr(Claims, "finish", finish)

@@ -95,8 +95,9 @@ def parse_rules(data: bytes, file: str) -> RulesTable:
     readers = top.tables("row", required=True)
     rows = tuple(_row(reader) for reader in readers)
     table = RulesTable(name=name, title=title, spread=spread, rows=rows)
-    for row_id in sorted({r.id for r in rows if sum(x.id == r.id for x in rows) > 1}):
-        top.fault("row", f"row id {row_id!r} is used twice")
+    for index, (row, reader) in enumerate(zip(rows, readers, strict=True)):
+        if row.id and any(earlier.id == row.id for earlier in rows[:index]):
+            reader.fault("id", f"row id {row.id!r} is used twice")
     if not source.faults:
         _prove(table, top, readers)
     source.finish()
@@ -131,7 +132,7 @@ def _row(table: TableReader) -> Row:
 def _conditions(table: TableReader) -> Iterator[Condition]:
     for fact in table.names():
         text = table.text(fact)
-        if not isinstance(text, str):
+        if not text.strip():  # not a text, or blank: the fault is noted
             continue
         if fact in WORDS:
             if text not in WORDS[fact]:

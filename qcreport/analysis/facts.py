@@ -6,7 +6,7 @@ import datetime as dt
 from dataclasses import dataclass
 
 from qcreport.analysis.comparable import Comparable, all_equal
-from qcreport.plan.model import ComparisonPlan
+from qcreport.plan.model import ComparisonPlan, Scale
 from qcreport.rules.evidence import Check, FactEvidence
 from qcreport.rules.facts import CANNOT_BE_JUDGED, EVERY_PAIR, WITH_THE_REFERENCE, Facts
 from qcreport.rules.spread import judge_spread
@@ -39,7 +39,17 @@ def gather(ready: Comparable, plan: ComparisonPlan, rules: RulesTable, earliest:
     evidence.append(_censored(ready))
     spread, checks = _spread(ready, plan, rules, earliest)
     evidence.extend(
-        (spread, FactEvidence(fact="scale", value=plan.scale.value, observed="", source="Comparison plan"))
+        (
+            spread,
+            FactEvidence(
+                fact="scale",
+                value=plan.scale.value,
+                observed="The plan compares ratios of geometric means."
+                if plan.scale is Scale.LOG
+                else "The plan compares differences of means.",
+                source="Comparison plan",
+            ),
+        )
     )
     facts = Facts(
         comparison=evidence[0].value,
@@ -88,7 +98,9 @@ def _sizes(sizes: list[int]) -> FactEvidence:
 def _variation(ready: Comparable) -> FactEvidence:
     value = "some" if ready.varies else "none"
     still = [g.label for g, v in zip(ready.groups, ready.values, strict=True) if all_equal(v)]
-    observed = f"All values of one group are equal: {', '.join(still)}." if still else ""
+    observed = (
+        f"All values are equal in {', '.join(still)}." if still else "The values of every group differ."
+    )
     return FactEvidence(fact="variation", value=value, observed=observed, source="Export")
 
 

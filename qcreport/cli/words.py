@@ -23,13 +23,14 @@ ANSWERS = {
 def outcome_lines(outcome: Outcome) -> list[str]:
     """Return what happened, one fact a line, ending with the path to open."""
     if isinstance(outcome, Reported) and not outcome.new:
-        return [f"Already answered in {outcome.number}; nothing new written.", f"Report: {outcome.path}"]
+        already = f"Already answered in {outcome.number}; nothing new written."
+        return [already, f"  {outcome.path}"]
     lines = _answer_lines(json.loads(outcome.result))
     if isinstance(outcome, Reported):
-        lines.append(f"Report {outcome.number}, {outcome.pages} pages, sealed; a draft until it is signed.")
-        lines.append(f"Report: {outcome.path}")
+        lines.append(f"  report {outcome.number}, {outcome.pages} pages, sealed; a draft until it is signed")
+        lines.append(f"  {outcome.path}")
     else:
-        lines.append("Computed and recorded; no report was asked for.")
+        lines.append("  computed and recorded; no report was asked for")
     return lines
 
 

@@ -4,12 +4,15 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from qcreport.errors import TooFewObservationsError
 from qcreport.stats.comparison import require_alpha
 from qcreport.stats.distributions.student import t_two_sided, t_two_sided_quantile
 from qcreport.stats.summary import summarize
+
+SMALLEST_ESD_N = 15
+"""From this size on the generalized ESD test holds its level."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -78,6 +81,55 @@ def grubbs(
     level = alpha / len(labels)
     checks = (_most_extreme(label, group, level) for label, group in zip(labels, values, strict=True))
     return tuple(check for check in checks if check is not None)
+
+
+def generalized_esd(
+    label: str, values: Sequence[float], alpha: float = 0.05, most: int | None = None
+) -> tuple[OutlierCheck, ...]:
+    """Find several outlying values of one group (Rosner's generalized extreme studentized deviate).
+
+    Parameters
+    ----------
+    label : str
+        Name of the group.
+    values : sequence of float, length n >= 15
+        Results in u.
+    alpha : float in (0, 1)
+        Level for this group.
+    most : int, optional
+        How many outlying values are looked for; by default a fifth of the group, at most ten.
+
+    Returns
+    -------
+    tuple of OutlierCheck
+        One for each step, the most extreme value first; flagged are all steps up to the last whose
+        statistic exceeds its critical value, so that values cannot hide each other. Stops early where no
+        scatter is left.
+
+    Raises
+    ------
+    TooFewObservationsError, DegenerateDataError
+        n < 15 or `most` outside 1 to n - 3; a value that is not finite.
+
+    References
+    ----------
+    .. [1] Rosner (1983), Technometrics 25(2), 165-172. doi:10.1080/00401706.1983.10487848
+    """
+    require_alpha(alpha)
+    n = len(values)
+    steps = min(n // 5, 10) if most is None else most
+    if n < SMALLEST_ESD_N or not 1 <= steps <= n - 3:
+        raise TooFewObservationsError(f"The generalized ESD test needs {SMALLEST_ESD_N} results; found {n}.")
+    left = list(range(n))
+    checks: list[OutlierCheck] = []
+    for _ in range(steps):
+        check = _most_extreme(label, [values[i] for i in left], alpha)
+        if check is None:
+            break
+        checks.append(replace(check, test="generalized_esd", index=left[check.index]))
+        del left[check.index]
+    last = max((i for i, check in enumerate(checks) if check.flagged), default=-1)
+    return tuple(replace(check, flagged=i <= last) for i, check in enumerate(checks))
 
 
 def grubbs_p(statistic: float, n: int) -> float:

@@ -143,7 +143,9 @@ def _split_literals(section: str) -> tuple[tuple[str, str], str]:
     before, behind, bare = "", "", ""
     digits_seen = False
     for literal, escaped, plain in _TOKEN.findall(section):
-        text = literal or escaped or (plain if plain in _SHOWN_AS_THEY_ARE else "")
+        exponent_sign = plain in ("+", "-") and bare[-1:] in ("E", "e")
+        shown = bool(plain) and plain in _SHOWN_AS_THEY_ARE and not exponent_sign
+        text = literal or escaped or (plain if shown else "")
         if text:
             before, behind = (before, behind + text) if digits_seen else (before + text, behind)
         elif plain in _PLACEHOLDERS:

@@ -5,12 +5,12 @@ from __future__ import annotations
 from fnmatch import fnmatchcase
 
 from qcreport.errors import ExportRefusedError
-from qcreport.workbook.cells import Book, Kind, Sheet, SheetInfo, SheetState
+from qcreport.workbook.cells import Book, Cell, Kind, Sheet, SheetInfo, SheetState
 from qcreport.workbook.layout_model import Layout
 from qcreport.workbook.notices import NoticeBook
 from qcreport.workbook.refusals import quoted, refused
 
-_FEW_NUMBERS = 2
+_SEVERAL = 2
 
 
 def choose_sheets(book: Book, layout: Layout, notices: NoticeBook) -> tuple[Sheet, ...]:
@@ -63,14 +63,19 @@ def _no_such_sheet(book: Book, wanted: str) -> ExportRefusedError:
 
 
 def no_table_found(book: Book) -> ExportRefusedError | None:
-    """Return the refusal of an export without anything like a table, or None where there is one."""
+    """Return the refusal of a workbook without anything like a table, or None where there is one.
+
+    A text export is one table by its nature: its heading tells more.
+    """
+    if book.is_text:
+        return None
     looked_at = [info for info in book.sheets if info.has_cells and info.state is SheetState.VISIBLE]
     if any(_holds_table(book.sheet(info)) for info in looked_at):
         return None
     names = ", ".join(info.name for info in looked_at)
     return refused(
         "no_table_found",
-        where="the file" if book.is_text else "the workbook",
+        where="the workbook",
         found="No sheet holds a table with a batch column and a value column."
         + (f" Sheets looked at: {names}." if names else ""),
         expected="A table with a batch column and a value column.",
@@ -79,15 +84,18 @@ def no_table_found(book: Book) -> ExportRefusedError | None:
 
 
 def _holds_table(sheet: Sheet) -> bool:
-    """Return whether two numbers stand below one another, each beside another filled cell."""
-    numbers: dict[int, int] = {}
+    """Return whether two rows of several filled cells stand there, with a number among them."""
+    n_rows = n_numbers = 0
     for columns in sheet.rows.values():
-        if len(columns) < 2:
+        filled = [cell for cell in columns.values() if not cell.blank or cell.formula]
+        if len(filled) < _SEVERAL:
             continue
-        for column, cell in columns.items():
-            numeric = cell.kind is not Kind.TEXT or any("0" <= c <= "9" for c in cell.text) or cell.formula
-            if numeric:
-                numbers[column] = numbers.get(column, 0) + 1
-                if numbers[column] >= _FEW_NUMBERS:
-                    return True
+        n_rows += 1
+        n_numbers += sum(_like_a_value(cell) for cell in filled)
+        if n_rows >= _SEVERAL and n_numbers:
+            return True
     return False
+
+
+def _like_a_value(cell: Cell) -> bool:
+    return cell.kind is not Kind.TEXT or cell.formula or any("0" <= c <= "9" for c in cell.text)

@@ -19,7 +19,7 @@ from qcreport.workbook.row_refusals import refuse_group_missing, refuse_summary_
 _SUMMARY_WORDS = frozenset(
     (
         "mean", "means", "average", "avg", "overall mean", "grand mean", "std dev", "stdev", "std", "st dev",
-        "standard deviation", "sd", "s", "rsd", "cv", "cv %", "min", "max", "minimum", "maximum", "median",
+        "standard deviation", "sd", "rsd", "cv", "cv %", "min", "max", "minimum", "maximum", "median",
         "total", "sum", "range", "variance", "mittelwert", "standardabweichung", "mw", "stabw", "moyenne",
         "ecart type", "écart type", "media",
     )

@@ -3,14 +3,18 @@
 from __future__ import annotations
 
 import json
+import re
 from dataclasses import dataclass
 from pathlib import Path
+from typing import Final
 
 from qcreport.errors import EnvironmentFailedError, UsageError
 from qcreport.settings.shipped import shipped_files, shipped_folder
 from qcreport.settings.site import SITE_FILE, Site, load_site, parse_site, require_folders
 
 _PRIVATE = ("work", "keys", "records")
+_VALUE: Final = r"""\"(?:[^"\\]|\\.)*"|'[^']*'|true|false"""
+"""A text or a flag on one line."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -88,25 +92,41 @@ def site_toml(answers: NewSite) -> str:
         ("language", answers.language),
         ("demonstration", answers.demonstration),
     ):
-        text = _with_value(text, key, value)
+        text = _with_value(text, "lab", key, value)
     return text
 
 
 def with_seal(text: str, key: str, passphrase_file: str | None) -> str:
     """Return site.toml's text with the service key's file and the passphrase's file set."""
-    text = _with_value(text, "key", key)
-    return _with_value(text, "passphrase_file", passphrase_file) if passphrase_file else text
+    text = _with_value(text, "seal", "key", key)
+    return _with_value(text, "seal", "passphrase_file", passphrase_file) if passphrase_file else text
 
 
-def _with_value(text: str, key: str, value: str | bool) -> str:
-    """Return the text with the line `key = …` (also commented out) set to a value, else unchanged."""
-    lines = text.splitlines()
-    for index, line in enumerate(lines):
-        bare = line.lstrip("# ")
-        if bare.startswith(f"{key} =") or bare.startswith(f"{key}="):
-            lines[index] = f"{key} = {_toml(value)}"
-            return "\n".join(lines) + "\n"
-    raise ValueError(f"the shipped site.toml has no line for {key}")
+def _with_value(text: str, table: str, key: str, value: str | bool) -> str:
+    """Return the text with a key of a table set to a value; comments stay.
+
+    The key's own line is changed, else the line that shows it commented out, else a line is added.
+    """
+    lines = text.split("\n")
+    setting = f"{key} = {_toml(value)}"
+    start = next((i for i, line in enumerate(lines) if _is_header(line, table)), None)
+    if start is None:
+        return f"{text.rstrip()}\n\n[{table}]\n{setting}\n"
+    after = lines[start + 1 :]
+    stop = start + 1 + next((i for i, line in enumerate(after) if line.lstrip().startswith("[")), len(after))
+    for marker in ("", "#"):
+        shape = re.compile(rf"\s*{marker}\s*{key}\s*=\s*({_VALUE})\s*(#.*)?")
+        for index in range(start + 1, stop):
+            if found := shape.fullmatch(lines[index].rstrip("\r")):
+                comment = found.group(2)
+                lines[index] = f"{setting:<31} {comment}" if comment else setting
+                return "\n".join(lines)
+    lines.insert(start + 1, setting)
+    return "\n".join(lines)
+
+
+def _is_header(line: str, table: str) -> bool:
+    return re.fullmatch(rf"\s*\[\s*{table}\s*\]\s*(#.*)?", line.rstrip("\r")) is not None
 
 
 def _toml(value: str | bool) -> str:

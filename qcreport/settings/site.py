@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import zoneinfo
 from dataclasses import dataclass
 from pathlib import Path
@@ -165,8 +166,15 @@ def parse_site(data: bytes, file: str, root: Path) -> Site:
 
 
 def _folders(table: TableReader, root: Path) -> Folders:
+    used: dict[Path, str] = {}
+
     def folder(key: str) -> Path:
-        return root / str(table.text(key, key))  # an absolute setting replaces the root
+        text = str(table.text(key, key))
+        path = Path(os.path.normpath(root / text))  # an absolute setting replaces the root
+        if text.strip() and (path in used or path == root):
+            table.fault(key, f"must be a folder of its own, found that of {used.get(path, 'the site')}")
+        used.setdefault(path, key)
+        return path
 
     return Folders(
         inbox=folder("inbox"),

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import secrets
+import stat
 from pathlib import Path
 
 from qcreport.errors import EnvironmentFailedError
@@ -55,6 +56,24 @@ def sync_folder(path: Path) -> None:
         os.fsync(descriptor)
     finally:
         os.close(descriptor)
+
+
+def clear_temporaries(folder: Path, *, before_s: float) -> int:
+    """Remove what `write_durably` left behind in killed processes, below a folder, and return how many.
+
+    Only files last changed before `before_s` (seconds since the epoch) go: a younger one may belong to a
+    process at work.
+    """
+    cleared = 0
+    for path in folder.rglob(".*.tmp"):
+        try:
+            status = path.lstat()
+            if stat.S_ISREG(status.st_mode) and status.st_mtime < before_s:
+                path.unlink()
+                cleared += 1
+        except OSError:
+            continue  # gone meanwhile, or not ours to remove: it is hidden and does no harm
+    return cleared
 
 
 def failed(what: str, error: OSError) -> EnvironmentFailedError:

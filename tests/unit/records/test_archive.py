@@ -11,7 +11,7 @@ import pytest
 from qcreport.canonical import sha256_hex
 from qcreport.errors import EnvironmentFailedError, LedgerError
 from qcreport.records.archive import Archive
-from qcreport.records.files import make_folder
+from qcreport.records.files import clear_temporaries, make_folder
 
 DIGEST = sha256_hex(b"data")
 
@@ -99,3 +99,24 @@ def test_a_folder_in_the_way_is_told(tmp_path: Path) -> None:
     (tmp_path / "file").write_bytes(b"")
     with pytest.raises(EnvironmentFailedError, match="could not be made"):
         make_folder(tmp_path / "file")
+
+
+def test_only_old_leftovers_of_killed_processes_are_cleared(
+    archive: Archive, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    kept = archive.store(b"data")
+    old, young, link = (kept.with_name(name) for name in (".old.tmp", ".young.tmp", ".link.tmp"))
+    for path, changed in ((old, 1000), (young, 3000)):
+        path.write_bytes(b"half")
+        os.utime(path, (changed, changed))
+    link.symlink_to(kept)
+    with monkeypatch.context() as patch:
+        patch.setattr(Path, "unlink", _refuse)
+        assert clear_temporaries(archive.root, before_s=2000) == 0
+    assert clear_temporaries(archive.root, before_s=2000) == 1
+    assert {path.name for path in kept.parent.iterdir()} == {kept.name, young.name, link.name}
+    assert archive.read(DIGEST) == b"data"
+
+
+def _refuse(_path: Path) -> None:
+    raise PermissionError

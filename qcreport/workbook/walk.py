@@ -11,7 +11,6 @@ from qcreport.workbook.columns import TableColumns
 from qcreport.workbook.group_cells import refuse_not_text
 from qcreport.workbook.layout_model import Layout, Shape
 from qcreport.workbook.notices import NoticeBook
-from qcreport.workbook.places import Area
 from qcreport.workbook.readings import Label, Reading
 from qcreport.workbook.row_labels import RowLabels
 from qcreport.workbook.row_refusals import refuse_group_missing, refuse_summary_row
@@ -184,10 +183,3 @@ def _up_to_last_filled(columns: tuple[int, ...], cells: dict[int, Cell]) -> tupl
     """Return the columns up to the last filled one; the first where none is, so that its absence is told."""
     filled = [position for position, column in enumerate(columns) if column in cells]
     return columns[: filled[-1] + 1] if filled else columns[:1]
-
-
-def table_area(walk_end: int, table: TableColumns) -> Area:
-    """Return the rows and columns that a table takes, headings included."""
-    columns = [*table.sources.values(), *(c for _, value_columns in table.values for c in value_columns)]
-    first = min((*table.layout.header_rows, table.layout.first_row))
-    return Area(first, min(columns), max(walk_end, first), max(columns))

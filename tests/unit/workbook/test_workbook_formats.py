@@ -131,24 +131,9 @@ def test_text_under_a_workbook_name_is_no_workbook() -> None:
     assert caught.value.code == "not_a_workbook"
 
 
-def test_fractions_under_percent_refuse_where_formats_cannot_be_seen() -> None:
-    layout = """
-name = "old"
-[[table]]
-header_rows = [2]
-first_row = 3
-group = { col = "A" }
-[[table.value]]
-characteristic = "shear"
-col = "C"
-unit = "%"
-"""
-    data = export("o25_old_format.xls")
-    assert read_export(data, name="x.xls", layout=parse_layout(layout.encode(), "l")).measurements
-    book = open_export(data, name="x.xls", text=None, limits=Limits())
-    assert book.limited
+def test_old_workbook_under_another_ending_refuses() -> None:
     with pytest.raises(ExportRefusedError) as caught:
-        read_export(data, name="x.xlsx", layout=parse_layout(layout.encode(), "l"))
+        read_export(export("o25_old_format.xls"), name="x.xlsx", layout=parse_layout(layout_with(), "l.toml"))
     assert caught.value.code == "wrong_extension"
 
 
@@ -237,3 +222,67 @@ def test_cut_copies_are_never_complete() -> None:
     data = export("o01_plain_long.xlsx")
     assert looks_complete(data)
     assert not any(looks_complete(data[:length]) for length in range(0, len(data), 37))
+
+
+def ods(rows: str, *, extra: dict[str, str] | None = None) -> bytes:
+    office = "urn:oasis:names:tc:opendocument:xmlns"
+    content = (
+        f'<office:document-content xmlns:office="{office}:office:1.0" xmlns:table="{office}:table:1.0" '
+        f'xmlns:text="{office}:text:1.0"><office:body><office:spreadsheet><table:table table:name="Data">'
+        f"{rows}</table:table></office:spreadsheet></office:body></office:document-content>"
+    )
+    manifest = f'<manifest:manifest xmlns:manifest="{office}:manifest:1.0"/>'
+    return zipped(
+        {
+            "mimetype": "application/vnd.oasis.opendocument.spreadsheet",
+            "META-INF/manifest.xml": manifest,
+            "content.xml": content,
+            **(extra or {}),
+        }
+    )
+
+
+def ods_row(*cells: str | float) -> str:
+    xml = ""
+    for cell in cells:
+        if isinstance(cell, float):
+            xml += f'<table:table-cell office:value-type="float" office:value="{cell}"/>'
+        else:
+            xml += f'<table:table-cell office:value-type="string"><text:p>{cell}</text:p></table:table-cell>'
+    return f"<table:table-row>{xml}</table:table-row>"
+
+
+def test_open_document_sheets_are_read_with_their_limits_told() -> None:
+    rows = (
+        ods_row("Batch", "Sample", "Shear [MPa]") + ods_row("LA-1", "S1", 24.1) + ods_row("LA-1", "S2", 24.25)
+    )
+    result = read_export(ods(rows), name="x.ods", layout=parse_layout(layout_with(), "l.toml"))
+    assert [(m.value, m.text, str(m.cell)) for m in result.measurements] == [
+        (24.1, "24.1", "Data!C2"),
+        (24.25, "24.25", "Data!C3"),
+    ]
+    assert [n.code for n in result.notices] == ["limited_checks"]
+
+
+def test_fractions_under_percent_refuse_in_open_document_sheets() -> None:
+    rows = (
+        ods_row("Batch", "Sample", "Shear [%]") + ods_row("LA-1", "S1", 0.0118) + ods_row("LA-1", "S2", 0.01)
+    )
+    layout = layout_with().replace(b"MPa", b"%")
+    with pytest.raises(ExportRefusedError) as caught:
+        read_export(ods(rows), name="x.ods", layout=parse_layout(layout, "l.toml"))
+    assert caught.value.code == "unsupported_format"
+
+
+@pytest.mark.parametrize(
+    ("extra", "code"),
+    [
+        ({"META-INF/manifest.xml": "<a><manifest:encryption-data/></a>"}, "encrypted"),
+        ({"styles.xml": "<!DOCTYPE a><a/>"}, "unsafe_content"),
+        ({"content.xml": "<broken"}, "damaged_or_incomplete"),
+    ],
+)
+def test_open_document_sheets_that_refuse(extra: dict[str, str], code: str) -> None:
+    with pytest.raises(ExportRefusedError) as caught:
+        read_export(ods("", extra=extra), name="x.ods", layout=parse_layout(layout_with(), "l.toml"))
+    assert caught.value.code == code

@@ -106,7 +106,8 @@ def _seal_lines(verdict: Mapping[str, Any]) -> Iterator[str]:
 
 def _signature_lines(signature: Mapping[str, Any]) -> Iterator[str]:
     meaning = f", meaning {signature['meaning']!r}" if signature["meaning"] else ""
-    yield f"Signed in the field {signature['field']} by {signature['name']}{meaning}, {_when(signature)}."
+    name = signature["name"] or "somebody who cannot be read"
+    yield f"Signed in the field {signature['field']} by {name}{meaning}, {_when(signature)}."
     if not signature["valid"]:
         why = "; ".join(signature["problems"]) or "the report was changed after it"
         yield f"  That signature does not hold: {why}."

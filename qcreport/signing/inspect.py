@@ -51,9 +51,9 @@ def inspect_pdf(pdf: bytes, *, roots: tuple[x509.Certificate, ...] | None, at: d
         from qcreport.signing.stamping import to_asn1
 
         known = None if roots is None else tuple(to_asn1(root) for root in roots)
-        judged = {id(s): judge(opened, s, known, at) for s in opened.signatures}
-        seal = judged[id(opened.seal)]
-        others = tuple(judged[id(s)] for s in opened.signatures if s is not opened.seal)
+        seal = judge(opened, opened.seal, known, at)
+        rest = [s for s in opened.signatures if s is not opened.seal]
+        others = tuple(judge(opened, s, known, at, seal=seal) for s in rest)
         lost = lost_signatures(opened)
         changed = (_appended(opened) and not seal.later_changes_allowed) or _trailing(opened) or bool(lost)
         return PdfStatus(

@@ -8,7 +8,6 @@ from dataclasses import dataclass
 from datetime import UTC, datetime, timedelta
 from typing import TYPE_CHECKING, Any
 
-from pyhanko.sign.diff_analysis import SuspiciousModification
 from pyhanko.sign.validation import async_validate_pdf_signature, async_validate_pdf_timestamp
 from pyhanko.sign.validation.status import SignatureCoverageLevel
 from pyhanko_certvalidator import ValidationContext
@@ -43,9 +42,17 @@ class _Raw:
 
 
 def judge(
-    opened: OpenedPdf, signature: EmbeddedPdfSignature, roots: Roots | None, at: datetime
+    opened: OpenedPdf,
+    signature: EmbeddedPdfSignature,
+    roots: Roots | None,
+    at: datetime,
+    *,
+    seal: SignatureStatus | None = None,
 ) -> SignatureStatus:
     """Return the status of one signature; never raises over what the signature holds.
+
+    What was appended after the seal is compared once, for the seal. Whatever may follow the seal may follow
+    a later signature too, so the others take that answer from the status of the seal, given as `seal`.
 
     A certificate is judged at the stated time of signing, because a report outlives the certificate of its
     seal; that the time is only stated, and that the certificate has ended since, is told in the notes.
@@ -54,7 +61,7 @@ def judge(
     certificate = _attempt(lambda: signature.signer_cert)
     stated = _stated_time(signature)
     moment = stated if stated is not None and stated <= at else at
-    raw = _validated(signature, kind, roots, moment)
+    raw = _validated(signature, _context(roots, moment), seal)
     problems = (*((raw.problem,) if raw.problem else ()), *_problems(opened, signature, stated, at))
     in_time = certificate is not None and _in_time(certificate, moment)
     return SignatureStatus(
@@ -88,13 +95,13 @@ def _context(roots: Roots | None, moment: datetime) -> ValidationContext:
 
 
 def _validated(
-    signature: EmbeddedPdfSignature, kind: SignatureKind, roots: Roots | None, moment: datetime
+    signature: EmbeddedPdfSignature, context: ValidationContext, seal: SignatureStatus | None
 ) -> _Raw:
-    context = _context(roots, moment)
+    once: dict[str, Any] = {"diff_policy": change_policy(), "skip_diff": seal is not None}
     try:
-        if kind is SignatureKind.TIME_STAMP:
-            return _from_stamp(signature, asyncio.run(async_validate_pdf_timestamp(signature, context)))
-        status = asyncio.run(async_validate_pdf_signature(signature, context, diff_policy=change_policy()))
+        if _kind(signature) is SignatureKind.TIME_STAMP:
+            return _from_stamp(asyncio.run(async_validate_pdf_timestamp(signature, context, **once)), seal)
+        status = asyncio.run(async_validate_pdf_signature(signature, context, **once))
     except MemoryError:
         raise
     except Exception:  # noqa: BLE001  a hostile signature makes the library raise anything
@@ -107,27 +114,32 @@ def _validated(
         valid=status.valid,
         chained=status.trusted,
         covers_entire_file=status.coverage == SignatureCoverageLevel.ENTIRE_FILE,
-        later_changes_allowed=bool(status.docmdp_ok)
-        and not isinstance(status.diff_result, SuspiciousModification),
+        later_changes_allowed=_later_changes_allowed(status, seal),
         stamped_at=stamp.timestamp.astimezone(UTC) if stamp is not None and stamped else None,
         stamp_trusted=stamp is not None and stamp.trusted,
         problem="the time stamp in the signature is not intact" if damaged else _fault(status),
     )
 
 
-def _from_stamp(signature: EmbeddedPdfSignature, status: Any) -> _Raw:
-    signature.compute_integrity_info(diff_policy=change_policy())  # type: ignore[no-untyped-call]
-    changes = signature.summarise_integrity_info()
+def _from_stamp(status: Any, seal: SignatureStatus | None) -> _Raw:
     return _Raw(
         intact=status.intact,
         valid=status.valid,
         chained=status.trusted,
-        covers_entire_file=changes["coverage"] == SignatureCoverageLevel.ENTIRE_FILE,
-        later_changes_allowed=bool(changes["docmdp_ok"]),
+        covers_entire_file=status.coverage == SignatureCoverageLevel.ENTIRE_FILE,
+        later_changes_allowed=_later_changes_allowed(status, seal),
         stamped_at=status.timestamp.astimezone(UTC) if status.intact and status.valid else None,
         stamp_trusted=status.trusted,
         problem=_fault(status),
     )
+
+
+def _later_changes_allowed(status: Any, seal: SignatureStatus | None) -> bool:
+    if status.coverage < SignatureCoverageLevel.ENTIRE_REVISION:
+        return False
+    if status.coverage == SignatureCoverageLevel.ENTIRE_FILE:
+        return True
+    return bool(status.docmdp_ok) if seal is None else seal.later_changes_allowed
 
 
 def _fault(status: Any) -> str | None:

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from io import BytesIO
 from typing import TYPE_CHECKING
 
 from qcreport.errors import NotOurReportError
@@ -64,9 +63,9 @@ def open_sealed(pdf: bytes) -> OpenedPdf:
     """
     require_pdf(pdf)
     with reading_pdf():
-        from pyhanko.pdf_utils.reader import PdfFileReader
+        from qcreport.signing.pdf_reader import IndexedReader
 
-        reader = PdfFileReader(BytesIO(pdf), strict=True)
+        reader = IndexedReader(pdf)
         if reader.encrypted:
             raise NotOurReportError("This PDF is encrypted; a sealed report never is.")
         signatures = tuple(reader.embedded_signatures)

@@ -130,3 +130,10 @@ def test_long_and_unprintable_values_are_shown_short() -> None:
     (line,) = found(pair_with(answer="x" * 500), pair_with(answer="\x1b[31m"))
     assert line.endswith('xx… in the report, "\\u001b[31m" recomputed')
     assert len(line) < 200
+
+
+def test_a_report_without_versions_is_compared_all_the_same() -> None:
+    bare = {key: value for key, value in result_document().items() if key != "versions"}
+    compared = compare_results(bare, result_document())
+    assert compared.matches
+    assert compared.notes == ()

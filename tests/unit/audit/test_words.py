@@ -126,3 +126,20 @@ def test_other_versions_are_noted(report: bytes, service_key: SigningKey) -> Non
 )
 def test_nothing_steers_the_terminal(text: object, shown: str) -> None:
     assert plain(text) == shown
+
+
+def test_a_signature_that_does_not_hold_is_told() -> None:
+    signature: dict[str, Any] = {
+        "field": "Reviewed",
+        "name": None,
+        "meaning": None,
+        "time": None,
+        "valid": False,
+    }
+    verdict = {
+        **not_judged("x"),
+        "signatures": [{**signature, "trusted": False, "problems": [], "notes": []}],
+    }
+    told = verdict_lines(verdict)
+    assert "Signed in the field Reviewed by somebody who cannot be read, no time stated." in told
+    assert told[-1] == "That signature does not hold: the report was changed after it."

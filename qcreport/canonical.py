@@ -18,7 +18,7 @@ def to_json_bytes(value: Any) -> bytes:
 
 
 def to_readable_json_bytes(value: Any) -> bytes:
-    """Return JSON for people and machines alike: insertion order, indented by one space, UTF-8, a final newline."""
+    """Return JSON for people and machines alike: insertion order, indented by one, UTF-8, a final newline."""
     return (json.dumps(value, indent=1, ensure_ascii=False, allow_nan=False) + "\n").encode("utf-8")
 
 

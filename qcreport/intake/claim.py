@@ -16,8 +16,9 @@ from dataclasses import replace
 from pathlib import Path
 
 from qcreport.canonical import sha256_hex
+from qcreport.durable import sync_folder, write_whole
 from qcreport.intake.exports import ClaimedExport, copy_of, read_claimed
-from qcreport.intake.files import sync_folder, system_errors, write_durably
+from qcreport.intake.files import system_errors
 from qcreport.intake.journal import COPY, ORIGINAL, Claim, ClaimMode, read_journal, write_journal
 from qcreport.intake.listing import Seen, seen_of
 from qcreport.intake.taken import Taken
@@ -161,7 +162,7 @@ class Claims:
                 self._taken.remember(claim.seen, sha256_hex(data))
             return None
         write_journal(claim)
-        write_durably(claim.copy, data, mode=0o400)
+        write_whole(claim.copy, data, mode=0o400)
         self._taken.remember(claim.seen, sha256_hex(data))
         return claim
 
@@ -193,7 +194,7 @@ class Claims:
         return successor
 
     def _set_aside(self, folder: Path, reason: str) -> Path:
-        write_durably(folder / "reason.txt", reason.encode("utf-8", "backslashreplace"))
+        write_whole(folder / "reason.txt", reason.encode("utf-8", "backslashreplace"))
         target = self._failed / folder.name
         folder.rename(target)
         sync_folder(self._failed)

@@ -7,8 +7,9 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from qcreport.canonical import sha256_hex
+from qcreport.durable import write_whole
 from qcreport.errors import ExportRefusedError
-from qcreport.intake.files import NotPlainFileError, open_plain, read_at_most, write_durably
+from qcreport.intake.files import NotPlainFileError, open_plain, read_at_most
 from qcreport.intake.journal import Claim, write_journal
 from qcreport.intake.listing import Seen, seen_of
 from qcreport.intake.names import one_line
@@ -76,7 +77,7 @@ def read_claimed(claim: Claim, max_bytes: int) -> ClaimedExport:
         return _unread(claim, claim.id.encode("ascii"), _unreadable(claim))
     if claim.seen.size > max_bytes:
         return _unread(claim, data, _too_large(claim, max_bytes))
-    write_durably(claim.copy, data, mode=0o400)
+    write_whole(claim.copy, data, mode=0o400)
     return _whole(claim, data)
 
 

@@ -1,9 +1,8 @@
-"""Writing and reading single files so that a kill, a link or a pipe in the way does no harm."""
+"""Reading single files so that a link or a pipe in the way does no harm."""
 
 from __future__ import annotations
 
 import os
-import secrets
 import stat
 from collections.abc import Iterator
 from contextlib import contextmanager
@@ -24,30 +23,6 @@ def system_errors(what: str) -> Iterator[None]:
     except OSError as error:
         reason = error.strerror or str(error)
         raise EnvironmentFailedError(f"{what}: {reason}. Mend that; nothing is lost.") from error
-
-
-def write_durably(path: Path, data: bytes, *, mode: int = 0o644) -> None:
-    """Write `data` under `path` by temporary file, fsync, rename and fsync of the folder."""
-    temporary = path.with_name(f".{secrets.token_hex(8)}.tmp")
-    flags = os.O_WRONLY | os.O_CREAT | os.O_EXCL | os.O_NOFOLLOW | os.O_CLOEXEC
-    try:
-        with os.fdopen(os.open(temporary, flags, mode), "wb") as stream:
-            stream.write(data)
-            stream.flush()
-            os.fsync(stream.fileno())
-        temporary.replace(path)
-    finally:
-        temporary.unlink(missing_ok=True)
-    sync_folder(path.parent)
-
-
-def sync_folder(path: Path) -> None:
-    """Make renames in a folder durable."""
-    descriptor = os.open(path, os.O_RDONLY | os.O_DIRECTORY | os.O_CLOEXEC)
-    try:
-        os.fsync(descriptor)
-    finally:
-        os.close(descriptor)
 
 
 @contextmanager

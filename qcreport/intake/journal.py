@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 from enum import StrEnum
 from pathlib import Path
 
-from qcreport.intake.files import write_durably
+from qcreport.durable import write_whole
 from qcreport.intake.listing import Seen
 
 JOURNAL = "journal.json"
@@ -66,7 +66,7 @@ def write_journal(claim: Claim) -> None:
         "inode": claim.seen.inode,
     }
     # json.dumps escapes what is no ASCII, lone surrogates included, so any name comes back as it was.
-    write_durably(claim.folder / JOURNAL, json.dumps(document).encode("ascii"))
+    write_whole(claim.folder / JOURNAL, json.dumps(document).encode("ascii"))
 
 
 def read_journal(folder: Path) -> Claim:

@@ -8,9 +8,10 @@ import os
 import shutil
 from pathlib import Path
 
+from qcreport.durable import sync_folder, write_whole
 from qcreport.errors import ExportRefusedError
 from qcreport.intake.exports import ClaimedExport
-from qcreport.intake.files import sync_folder, system_errors, write_durably
+from qcreport.intake.files import system_errors
 from qcreport.intake.names import WHY, one_line, shortened
 
 _NO_LINKS = frozenset({errno.EXDEV, errno.EPERM, errno.EOPNOTSUPP, errno.EMLINK})
@@ -51,7 +52,7 @@ def put_refused(refused: Path, export: ClaimedExport, error: ExportRefusedError,
         if not folder.is_dir():
             _appear(folder, why, export.claim.id)
         elif (folder / WHY).read_bytes() != why:
-            write_durably(folder / WHY, why)
+            write_whole(folder / WHY, why)
         if not _others(folder):
             _put_original(folder, export)
     return folder
@@ -74,7 +75,7 @@ def _appear(folder: Path, why: bytes, claim_id: str) -> None:
     temporary = folder.with_name(f".{claim_id}.tmp")
     shutil.rmtree(temporary, ignore_errors=True)
     temporary.mkdir()
-    write_durably(temporary / WHY, why)
+    write_whole(temporary / WHY, why)
     temporary.rename(folder)
     sync_folder(folder.parent)
 
@@ -96,7 +97,7 @@ def _put_original(folder: Path, export: ClaimedExport) -> None:
 def _put(target: Path, export: ClaimedExport) -> None:
     """Write what was read; link or copy what was too large to read (the claim keeps its own meanwhile)."""
     if export.data is not None:
-        write_durably(target, export.data)
+        write_whole(target, export.data)
         return
     original = export.claim.original
     if original.is_symlink() or not original.is_file():

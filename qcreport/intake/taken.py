@@ -8,7 +8,7 @@ from collections.abc import Iterable
 from pathlib import Path
 
 from qcreport.canonical import sha256_hex
-from qcreport.intake.files import write_durably
+from qcreport.durable import write_whole
 from qcreport.intake.listing import Seen
 
 
@@ -43,7 +43,7 @@ class Taken:
             "sha256": sha256,
         }
         self._folder.mkdir(parents=True, exist_ok=True)
-        write_durably(self._path(seen.name), json.dumps(document).encode("ascii"))
+        write_whole(self._path(seen.name), json.dumps(document).encode("ascii"))
         self._known[seen.name] = (seen, sha256)
 
     def forget_others(self, names: Iterable[str]) -> None:

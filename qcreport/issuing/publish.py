@@ -4,8 +4,8 @@ from __future__ import annotations
 
 from pathlib import Path
 
+from qcreport.durable import write_durably
 from qcreport.errors import EnvironmentFailedError
-from qcreport.records.files import write_durably
 from qcreport.signing.attachments import attachments_of
 from qcreport.signing.reading import sealed_revision
 

@@ -7,12 +7,16 @@ from contextlib import contextmanager
 from dataclasses import dataclass
 from datetime import datetime
 
+from qcreport.durable import clear_temporaries
 from qcreport.pipeline.key import load_service_key
 from qcreport.pipeline.pipeline import Pipeline, Progress
 from qcreport.pipeline.templates import load_site_templates
 from qcreport.pipeline.workers import Workers
 from qcreport.records.facade import Records
 from qcreport.settings.site import Site, require_folders
+
+_A_DAY_S = 86_400.0
+"""Age from which a half-written file was surely left behind by a killed process."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -49,6 +53,8 @@ def opened(
     templates = load_site_templates(site)
     require_folders(site)
     records = Records.open(site.folders.records, clock, archive_folder=site.folders.archive)
+    for folder in (site.folders.archive, site.folders.reports):
+        clear_temporaries(folder, before_s=clock().timestamp() - _A_DAY_S)
     with Workers(workers) as pool:
         pipeline = Pipeline(
             site=site,

@@ -123,9 +123,9 @@ class Pipeline:
         )
 
     def _others(self, received: Received, settings: PlanSettings, inputs: RunInputs) -> list[Run]:
-        """Return the runs over the same export by the same plan under other settings."""
+        """Return the reports of the same export by the same plan under other settings."""
         runs = self._records.runs_of_export(received.sha256, settings.plan.name)
-        return [r for r in runs if r.inputs != inputs]
+        return [r for r in runs if r.inputs != inputs and r.sealing is not None]
 
     def _earlier(self, received: Received, run: Run, sealing: Sealing) -> Reported:
         """Return the report that answers this run key already; nothing new is written but the duplicate."""

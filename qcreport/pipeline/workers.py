@@ -8,6 +8,7 @@ import signal
 from collections.abc import Callable
 from concurrent.futures import ProcessPoolExecutor
 from concurrent.futures.process import BrokenProcessPool
+from multiprocessing import forkserver
 from types import TracebackType
 from typing import Final, TypeVar
 
@@ -34,7 +35,8 @@ class Workers:
         self._pool: ProcessPoolExecutor | None = None
 
     def __enter__(self) -> Workers:
-        """Start nothing yet: the first job starts the pool."""
+        """Start the server that makes workers, before any thread; the first job starts the workers."""
+        forkserver.ensure_running()
         return self
 
     def __exit__(

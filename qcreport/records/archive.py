@@ -7,8 +7,8 @@ import re
 from pathlib import Path
 
 from qcreport.canonical import sha256_hex
+from qcreport.durable import failed, make_folder, write_durably
 from qcreport.errors import LedgerError
-from qcreport.records.files import failed, make_folder, write_durably
 
 _DIGEST = re.compile(r"[0-9a-f]{64}\Z")
 

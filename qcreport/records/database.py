@@ -19,8 +19,8 @@ from sqlalchemy import URL, Connection, Engine, create_engine, event, func, inse
 from sqlalchemy.exc import DatabaseError, OperationalError
 from sqlalchemy.pool import ConnectionPoolEntry, NullPool
 
+from qcreport.durable import make_folder
 from qcreport.errors import EnvironmentFailedError, LedgerError, QcReportError
-from qcreport.records.files import make_folder
 from qcreport.records.migrations import MIGRATIONS
 from qcreport.records.moments import Clock, utc_text
 from qcreport.records.tables import SCHEMA_VERSION

@@ -15,6 +15,7 @@ from pathlib import Path
 from sqlalchemy import Connection, insert, select
 
 from qcreport.canonical import sha256_hex
+from qcreport.durable import make_folder
 from qcreport.errors import ExportRefusedError, LedgerError
 from qcreport.measurements import MeasurementSet
 from qcreport.records import ledger, runs, store
@@ -22,7 +23,6 @@ from qcreport.records.archive import Archive
 from qcreport.records.chain import Entry, Kind
 from qcreport.records.database import Database
 from qcreport.records.facts import Facts, clean_text
-from qcreport.records.files import make_folder
 from qcreport.records.ledger import Step
 from qcreport.records.lock import exclusive
 from qcreport.records.lookups import Lookups

@@ -8,8 +8,8 @@ from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from pathlib import Path
 
+from qcreport.durable import failed
 from qcreport.errors import EnvironmentFailedError
-from qcreport.records.files import failed
 
 
 @contextmanager

@@ -7,8 +7,8 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Protocol
 
+from qcreport.durable import write_durably
 from qcreport.errors import EnvironmentFailedError, UsageError
-from qcreport.records.files import write_durably
 from qcreport.settings.new_site import with_seal
 from qcreport.settings.site import SITE_FILE, Site, parse_site
 

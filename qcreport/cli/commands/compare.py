@@ -13,11 +13,11 @@ from qcreport.canonical import sha256_hex
 from qcreport.cli.now import now
 from qcreport.cli.run import REFUSED, print_error
 from qcreport.cli.words import outcome_lines
+from qcreport.durable import make_folder, write_durably
 from qcreport.errors import EnvironmentFailedError, ExportRefusedError, UsageError
 from qcreport.pipeline.choose_plans import fitting_plans
 from qcreport.pipeline.opened import Opened, opened
 from qcreport.pipeline.outcome import Outcome, Received, Reported
-from qcreport.records.files import make_folder, write_durably
 from qcreport.settings import PlanSettings, Site, find_plan, load_plans, load_site
 from qcreport.workbook.layout_try import layout_try_json
 

@@ -12,10 +12,10 @@ from qcreport.audit.words import verdict_lines
 from qcreport.cli.now import now
 from qcreport.cli.run import ANSWER_IS_NO, DONE
 from qcreport.cli.tell import TerminalAudience
+from qcreport.durable import write_durably
 from qcreport.errors import UsageError
 from qcreport.pipeline.opened import opened
 from qcreport.pipeline.outcome import Reported
-from qcreport.records.files import write_durably
 from qcreport.service.serve import serve
 from qcreport.settings import Site, load_site
 from qcreport.settings.keys import key_files, read_bytes, write_key
@@ -58,8 +58,9 @@ def run(arguments: argparse.Namespace) -> int:
         print(f"  {report.path}")
     for _, folder in audience.refused:
         print(f"  {folder}/why.txt")
-    print(f"Next: change a plan in {root}/config/plans, drop an export into {root}/inbox and run")
-    print(f"      qcreport watch --once --site {root}")
+    print(f"Next: drop an export into {root}/inbox and run qcreport watch --once --site {root}")
+    print(f"      or change a plan in {root}/config/plans; an export that was reported before needs a reason then:")
+    print(f'      qcreport compare EXPORT --reason "…" --site {root}')
     return DONE if all_hold else ANSWER_IS_NO
 
 

@@ -9,9 +9,9 @@ from pathlib import Path
 import pytest
 
 from qcreport.canonical import sha256_hex
+from qcreport.durable import clear_temporaries, make_folder
 from qcreport.errors import EnvironmentFailedError, LedgerError
 from qcreport.records.archive import Archive
-from qcreport.records.files import clear_temporaries, make_folder
 
 DIGEST = sha256_hex(b"data")
 

@@ -10,13 +10,13 @@ from pathlib import Path
 import pytest
 
 from qcreport.canonical import sha256_hex
+from qcreport.durable import write_durably
 from qcreport.errors import ExportRefusedError
 from qcreport.intake.claim import Claims
 from qcreport.intake.exports import ClaimedExport
 from qcreport.measurements import CellRef, Measurement, MeasurementSet
 from qcreport.records.check import check
 from qcreport.records.facade import Reading, Records
-from qcreport.records.files import write_durably
 from qcreport.records.run import RunInputs
 from qcreport.service.bookkeeping import record_event
 from qcreport.service.model import Event, Outcome, OutcomeKind

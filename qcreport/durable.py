@@ -11,20 +11,27 @@ from qcreport.errors import EnvironmentFailedError
 
 
 def write_durably(path: Path, data: bytes, *, mode: int = 0o644) -> None:
-    """Write `data` under `path` by temporary file, fsync, rename, and fsync of the folder.
+    """Write `data` under `path` so that after a kill or a power cut it is whole or not there.
 
     Raises
     ------
     EnvironmentFailedError
         Where the disk is full, the folder missing or not writable.
     """
-    temporary = path.with_name(f".{path.name[:100]}.{secrets.token_hex(8)}.tmp")
+    try:
+        write_whole(path, data, mode=mode)
+    except OSError as error:
+        raise failed(f"{path} could not be written", error) from error
+
+
+def write_whole(path: Path, data: bytes, *, mode: int = 0o644) -> None:
+    """Do the same for a caller that answers the system's own errors: temporary file, fsync, rename, fsync."""
+    # A short name: the file's own may be as long as the system allows.
+    temporary = path.with_name(f".{secrets.token_hex(8)}.tmp")
     try:
         _write_new(temporary, data, mode)
         temporary.replace(path)
         sync_folder(path.parent)
-    except OSError as error:
-        raise failed(f"{path} could not be written", error) from error
     finally:
         temporary.unlink(missing_ok=True)
 

@@ -76,9 +76,21 @@ def write_key(site: Site, files: KeyFiles, made: MadeKey, passphrase_file: str |
 
 
 def read_bytes(path: Path, what: str) -> bytes:
-    """Return a file's bytes; EnvironmentFailedError names it where it cannot be read."""
+    """Return a file's bytes.
+
+    Raises
+    ------
+    UsageError
+        Where it is not there.
+    EnvironmentFailedError
+        Where it cannot be read.
+    """
     try:
         return path.read_bytes()
+    except (FileNotFoundError, NotADirectoryError):
+        raise UsageError(f"{what} {path} is not there. Correct the name.", file=os.fspath(path)) from None
+    except IsADirectoryError:
+        raise UsageError(f"{what} {path} is a folder. Name the file.", file=os.fspath(path)) from None
     except OSError as error:
         raise EnvironmentFailedError(
             f"{what} {path} cannot be read: {error.strerror}.", file=os.fspath(path)

@@ -130,8 +130,9 @@ def _overall(outcome: Outcome, table: Overall | None) -> Overall | None:
         return None
     if outcome.procedure in POOLED or _similar(outcome):
         return table
+    summaries = outcome.ready.summaries if outcome.comparison is None else outcome.comparison.summaries
     try:
-        return _as_overall(welch(outcome.ready.summaries), table.supported_digits, pooled=False)
+        return _as_overall(welch(summaries), table.supported_digits, pooled=False)
     except StatisticsError:
         return None
 

@@ -32,6 +32,8 @@ class Comparison:
 
     posthoc: PosthocResult
     """The procedure's own numbers, on the scale of the comparison."""
+    summaries: tuple[GroupSummary, ...]
+    """The groups as they entered it, a variance floored where there was none."""
     pairs: tuple[PairResult, ...]
     """The pairs as reported."""
     all_within_margin: bool | None
@@ -79,6 +81,7 @@ def compare(
     pairs = tuple(_pair(c, by_label, margin, scale, needed) for c in posthoc.comparisons)
     return Comparison(
         posthoc=posthoc,
+        summaries=summaries,
         pairs=pairs,
         all_within_margin=_all_within(posthoc, by_label, margin, alpha),
         notices=notices,

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import dataclasses
 import itertools
 import math
 
@@ -187,6 +188,23 @@ class TestZeroSpread:
         expected = math.sqrt((0.1 / 5.0) ** 2 / 12 / 4 + stats.tvar(logs) / 4)
         assert result.pairs[0].se == pytest.approx(expected, rel=1e-12)
 
+    def test_the_overall_test_uses_it_too(self) -> None:
+        result = only(of_groups(self.GROUPS, decimals=1), plan(comparison='procedure = "games_howell"'))
+        assert result.overall is not None
+        assert result.overall.name == "welch"
+        # with a variance of rounding only, nearly all weight lies on the group without scatter
+        assert result.overall.p is not None
+        assert 0.0 < result.overall.p < 0.05
+
+    def test_a_resolution_that_cannot_be_squared_gives_no_comparison(self) -> None:
+        data = of_groups(self.GROUPS, decimals=200)
+        result = only(data, plan(comparison='procedure = "games_howell"'))
+        assert result.answer == "not_compared"
+        assert result.not_compared[0].reason.startswith("games_howell cannot answer here: ")
+        pooled = only(data, plan(comparison=POOLED))
+        assert len(pooled.pairs) == 3
+        assert pooled.sensitivity is None, "the alternative cannot answer"
+
     def test_a_pooled_procedure_needs_no_floor(self) -> None:
         result = run(self.GROUPS, plan(comparison=POOLED))
         assert result.notices == ()
@@ -294,6 +312,14 @@ class TestSensitivity:
         assert result.sensitivity is not None
         assert result.sensitivity.procedure == "dunnett"
 
+    def test_a_table_that_knows_one_policy_has_no_alternative(self) -> None:
+        default = rules()
+        kept = [
+            row for row in default.rows if "similar" not in {str(getattr(c, "word", "")) for c in row.when}
+        ]
+        table = dataclasses.replace(default, rows=tuple(kept))
+        assert only({"A": A, "B": B}, table=table).sensitivity is None
+
     def test_textbook(self) -> None:
         result = only({"A": A, "B": B, "C": C}, table=rules(TEXTBOOK))
         assert (result.procedure, result.rule.id) == ("tukey_hsd", "levene_passed_equal_sizes")
@@ -359,6 +385,11 @@ class TestDesign:
             big = {label: stretched(values, size) for label, values in (("A", first), ("B", second))}
             answer = only(big, asked).pairs[0].answer
             assert (answer != "not_settled") is settled, (size, answer)
+
+    def test_no_number_settles_a_difference_on_the_margin_itself(self) -> None:
+        groups = {"A": [0.0, 1.0, 2.0], "B": [1.0, 2.0, 3.0]}
+        (pair,) = only(groups, plan(comparison=POOLED, characteristic="margin = 1")).pairs
+        assert (pair.difference, pair.answer, pair.needed_n) == (-1.0, "not_settled", None)
 
     def test_settled_pairs_and_plans_without_margin_need_none(self) -> None:
         assert only({"A": A, "B": B}).pairs[0].needed_n is None

@@ -155,6 +155,17 @@ class TestNotCompared:
         assert {g.label for g in result.not_compared} == set(groups)
         assert all(g.reason for g in result.not_compared)
 
+    def test_a_fixed_procedure_that_cannot_answer_says_why(self) -> None:
+        result = only({"A": A, "B": [*B, 6.1]}, plan(comparison='procedure = "tukey_hsd"'))
+        assert (result.answer, result.procedure, result.rule.id) == ("not_compared", "none", "fixed_by_plan")
+        assert result.not_compared[0].reason.startswith("tukey_hsd cannot answer here: ")
+        assert "Tukey-Kramer" in result.not_compared[0].reason
+
+    def test_a_plan_may_ask_for_no_comparison(self) -> None:
+        result = only({"A": A, "B": B}, plan(comparison='procedure = "none"'))
+        assert (result.answer, result.procedure, result.pairs) == ("not_compared", "none", ())
+        assert result.overall is not None
+
     def test_means_that_differ_only_in_the_last_bits_do_not_vary(self) -> None:
         """(1.1 + 1.3)/2 and (1.2 + 1.2)/2 are not the same double, but the same mean."""
         readings = [(1.1, 1.3), (1.2, 1.2), (1.0, 1.4)]

@@ -71,13 +71,6 @@ class RulesTable:
     rows: tuple[Row, ...]
     """In order."""
 
-    def first_match(self, facts: Facts) -> int:
-        """Return the index of the row that decides."""
-        for index, row in enumerate(self.rows):
-            if row.fails_on(facts) is None:
-                return index
-        raise AssertionError("a loaded table answers every combination")
-
 
 def parse_rules(data: bytes, file: str) -> RulesTable:
     """Return the decision table of a TOML file.

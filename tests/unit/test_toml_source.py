@@ -125,6 +125,10 @@ z = 3
         assert line is not None
         assert self.TEXT.split("\n")[line - 1].startswith(first)
 
+    def test_a_quote_beside_the_closing_ones_opens_nothing(self) -> None:
+        source = source_of('a = """\nx""""\nb = [ # "\n]\nc = 1\n')
+        assert [source.line_of((key,)) for key in "abc"] == [1, 3, 5]
+
     def test_quotes_of_the_other_kind_are_text(self) -> None:
         source = source_of("a = \"it's '''\"\nb = '''\n\"\"\"\n'''\nc = 1\n")
         assert [source.line_of((key,)) for key in "abc"] == [1, 2, 5]

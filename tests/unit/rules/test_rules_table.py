@@ -78,8 +78,8 @@ class TestShipped:
     @pytest.mark.parametrize("name", ["default", "textbook"])
     def test_every_row_decides_something(self, name: str) -> None:
         table = shipped(name)
-        used = {table.first_match(facts) for facts in combinations(table)}
-        assert used == set(range(len(table.rows)))
+        used = {choose(table, facts).rule.id for facts in combinations(table)}
+        assert used == {row.id for row in table.rows}
 
 
 DEFAULT_ROWS = [
@@ -330,6 +330,11 @@ class TestChoice:
 
     def test_the_last_row_says_that_it_takes_the_rest(self) -> None:
         assert choose(shipped("default"), PLAIN).trace[-1].why == "applies to everything that is left"
+
+    def test_a_table_that_was_never_proven_has_no_answer_of_its_own(self) -> None:
+        table = dataclasses.replace(shipped("default"), rows=())
+        with pytest.raises(AssertionError):
+            choose(table, PLAIN)
 
     def test_a_fixed_procedure_that_the_table_shares(self) -> None:
         choice = fixed_by_plan(shipped("default"), PLAIN, "games_howell")

@@ -122,10 +122,7 @@ def _one_minus_w(ordered: Sequence[float], weights: Sequence[float]) -> float:
 def _p_value(log_lost: float, n: int) -> float:
     """Return P(W at most as large) from the transformed log(1 - W) ([2]_, section 3)."""
     if n <= 11:
-        room = _polynomial(_SMALL_GAMMA, n) - log_lost
-        if room <= 0.0:
-            return 0.0
-        value = -math.log(room)
+        value = -math.log(_polynomial(_SMALL_GAMMA, n) - log_lost)  # positive from n = 5 on, as log_lost < 0
         mean, log_sd = _polynomial(_SMALL_MEAN, n), _polynomial(_SMALL_LOG_SD, n)
     else:
         value = log_lost

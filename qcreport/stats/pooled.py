@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from functools import lru_cache
 
 import numpy as np
 
@@ -92,6 +93,12 @@ def tukey_kramer(groups: Sequence[GroupSummary], *, alpha: float) -> PosthocResu
     return _tukey("tukey_kramer", groups, alpha)
 
 
+@lru_cache(maxsize=1024)
+def critical_range(alpha: float, k: int, df: float) -> float:
+    """Return q(alpha; k, df); tables of one design share it."""
+    return float(studentized_range_isf(alpha, k, df))
+
+
 def _tukey(procedure: str, groups: Sequence[GroupSummary], alpha: float) -> PosthocResult:
     require_alpha(alpha)
     overall = anova(groups)
@@ -101,7 +108,7 @@ def _tukey(procedure: str, groups: Sequence[GroupSummary], alpha: float) -> Post
     differences = [mean_difference(groups[i], groups[j]) for i, j in pairs]
     statistics = [d / se for d, se in zip(differences, sds, strict=True)]
     p = studentized_range_sf(_SQRT_2 * np.abs(statistics), k, df)
-    q = float(studentized_range_isf(alpha, k, df))
+    q = critical_range(alpha, k, df)
     critical = q / _SQRT_2
     comparisons = tuple(
         PairwiseComparison(

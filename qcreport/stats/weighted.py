@@ -68,6 +68,7 @@ def level_at_critical_value(t: Array, variances: Array, dfs: Array, tail: Tail) 
     -------
     (m,) floats in [0, 1]
     """
+    at_zero, exactly_zero = tail(np.zeros(t.shape), dfs[:, 0]), t <= 0.0
     t = np.maximum(t, _SMALLEST_T)
     light = np.argmin(variances, axis=-1)[:, None]
     a = np.take_along_axis(variances, light, axis=-1)[:, 0]
@@ -83,7 +84,8 @@ def level_at_critical_value(t: Array, variances: Array, dfs: Array, tail: Tail) 
         logs = np.log(np.maximum(both, _SMALLEST_TAIL))
         return logs[: rows.size] - logs[rows.size :], both[rows.size :]
 
-    return _root_level(excess, np.minimum(-np.log(weight), _WIDEST))
+    level = _root_level(excess, np.minimum(-np.log(weight), _WIDEST))
+    return np.where(exactly_zero, at_zero, level)
 
 
 def _root_level(excess: Callable[[Array, Index], tuple[Array, Array]], most: Array) -> Array:

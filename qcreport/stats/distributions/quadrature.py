@@ -51,8 +51,10 @@ def tail_area(laws: Sequence[Law], law_of_row: Index, q: Array, df: Array) -> Ta
     Tail
         Two arrays (n,). The slope of an infinite df is taken by a central difference.
     """
-    area, slope = np.empty(q.shape), np.empty(q.shape)
     tabled = df <= scale.LARGEST_TABLED_DF
+    if tabled.all():
+        return _bounded(*_from_tables(laws, law_of_row, q, df))
+    area, slope = np.empty(q.shape), np.empty(q.shape)
     rows = np.flatnonzero(tabled)
     if rows.size:
         area[rows], slope[rows] = _from_tables(laws, law_of_row[rows], q[rows], df[rows])
@@ -60,8 +62,12 @@ def tail_area(laws: Sequence[Law], law_of_row: Index, q: Array, df: Array) -> Ta
         rows = np.flatnonzero(~tabled & (law_of_row == number))
         if rows.size:
             area[rows], slope[rows] = _from_local_nodes(law, q[rows], df[rows])
-    area = np.where(area < SMALLEST_P, 0.0, np.minimum(area, 1.0))
-    return Tail(area, slope)
+    return _bounded(area, slope)
+
+
+def _bounded(area: Array, slope: Array) -> Tail:
+    """Return the tail with areas in [0, 1] and lost ones at 0."""
+    return Tail(np.where(area < SMALLEST_P, 0.0, np.minimum(area, 1.0)), slope)
 
 
 class _Windows(NamedTuple):
@@ -88,16 +94,18 @@ def _from_tables(laws: Sequence[Law], law_of_row: Index, q: Array, df: Array) ->
     start = windows.first * step - log_q  # u at the first node
     area, slope = np.empty(q.shape), np.empty(q.shape)
     for rows, length, depth in row_blocks(windows.length, level):
-        nodes = np.arange(length)
-        place = (windows.base[rows] + windows.first[rows])[:, None] + nodes
-        place = np.maximum(place, windows.lowest[rows, None])
-        squared = np.exp(2.0 * start[rows])[:, None] * np.exp(
-            2.0 * scale.STEPS[depth] * nodes
-        )  # s**2 = exp(2u)
-        exponent = start[rows, None] + (scale.STEPS[depth] * nodes + 0.5) - 0.5 * squared
-        part = np.exp(df[rows, None] * exponent) * windows.flat[place]
+        offsets = scale.STEPS[depth] * np.arange(length)
+        place = (windows.base[rows] + windows.first[rows])[:, None] + np.arange(length)
+        np.maximum(place, windows.lowest[rows, None], out=place)
+        grown = np.exp(2.0 * start[rows])[:, None] * np.exp(2.0 * offsets)
+        grown -= 1.0  # s**2 - 1, s**2 = exp(2u)
+        part = (start[rows, None] + offsets) - 0.5 * grown
+        part *= df[rows, None]
+        np.exp(part, out=part)
+        part *= windows.flat.take(place)
         area[rows] = part.sum(axis=-1)
-        slope[rows] = (part * (squared - 1.0)).sum(axis=-1)
+        part *= grown
+        slope[rows] = part.sum(axis=-1)
     constant = scale.density_constant(df) * step
     return Tail(area * constant, np.minimum(slope * df * constant, 0.0))
 

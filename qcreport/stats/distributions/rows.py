@@ -10,9 +10,9 @@ from numpy.typing import NDArray
 Array = NDArray[np.float64]
 Index = NDArray[np.intp]
 
-LENGTH_UNIT = 8
+LENGTH_UNIT = 16
 """Row lengths are rounded up to multiples of this."""
-_ELEMENTS_AT_ONCE = 1 << 18
+_ELEMENTS_AT_ONCE = 1 << 13
 
 
 def distinct(codes: Index) -> list[int]:

@@ -7,7 +7,7 @@ import json
 import math
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from qcreport.canonical import (
@@ -36,6 +36,7 @@ def test_what_is_not_finite_never_enters_json(value: float) -> None:
     assert finite_or_none(value) is None
 
 
+@settings(deadline=None)
 @given(st.floats(allow_nan=False, allow_infinity=False))
 def test_numbers_keep_every_bit(value: float) -> None:
     for form in (to_json_bytes, to_readable_json_bytes):

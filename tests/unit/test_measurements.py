@@ -6,7 +6,7 @@ import dataclasses
 from typing import Any
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from openpyxl.utils import column_index_from_string, get_column_letter
 
@@ -49,12 +49,14 @@ def test_a_cell_is_named_as_a_formula_would(cell: CellRef, text: str) -> None:
     assert str(cell) == text
 
 
+@settings(deadline=None)
 @given(st.integers(min_value=1, max_value=18278))
 def test_column_letters_agree_with_a_spreadsheet_library(column: int) -> None:
     assert column_letters(column) == get_column_letter(column)
     assert column_index_from_string(column_letters(column)) == column
 
 
+@settings(deadline=None)
 @given(st.text(alphabet=st.characters(codec="utf-8"), max_size=31), st.text(max_size=31))
 def test_two_sheets_never_share_a_quoted_name(first: str, second: str) -> None:
     assert (quoted_sheet(first) == quoted_sheet(second)) == (first == second)

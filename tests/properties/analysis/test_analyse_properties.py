@@ -104,7 +104,7 @@ def grouped(least: int = 2, most: int = 5) -> st.SearchStrategy[dict[str, list[f
     )
 
 
-few = settings(deadline=None, max_examples=25)
+few = settings(deadline=None, max_examples=15)
 
 
 def same(first: float | None, second: float | None, factor: float = 1.0) -> bool:
@@ -265,7 +265,7 @@ ANY = st.one_of(
 
 
 @pytest.mark.parametrize("scale", ["as measured", "log"])
-@settings(deadline=None, max_examples=120)
+@settings(deadline=None, max_examples=80)
 @given(
     groups=st.lists(st.lists(ANY, min_size=1, max_size=6), min_size=1, max_size=5),
     name=st.sampled_from(["by rules", *EVERY_PAIR, "tukey_hsd", *WITH_REFERENCE, "none", "nested"]),

@@ -5,7 +5,7 @@ from __future__ import annotations
 import dataclasses
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from qcreport.plan.model import WITH_REFERENCE
@@ -26,6 +26,7 @@ tables = pytest.mark.parametrize("table", TABLES.values(), ids=TABLES)
 
 
 @tables
+@settings(deadline=None)
 @given(facts=FACTS)
 def test_exactly_one_row_decides(table: RulesTable, facts: Facts) -> None:
     applies = [row.fails_on(facts) is None for row in table.rows]
@@ -38,6 +39,7 @@ def test_exactly_one_row_decides(table: RulesTable, facts: Facts) -> None:
 
 
 @tables
+@settings(deadline=None)
 @given(facts=FACTS)
 def test_the_procedure_fits_the_facts(table: RulesTable, facts: Facts) -> None:
     procedure = choose(table, facts).procedure
@@ -53,6 +55,7 @@ def test_the_procedure_fits_the_facts(table: RulesTable, facts: Facts) -> None:
 
 
 @tables
+@settings(deadline=None)
 @given(facts=FACTS)
 def test_the_reason_of_a_row_passed_over_is_true(table: RulesTable, facts: Facts) -> None:
     for row, step in zip(table.rows, choose(table, facts).trace, strict=False):
@@ -62,6 +65,7 @@ def test_the_reason_of_a_row_passed_over_is_true(table: RulesTable, facts: Facts
             assert not failed.holds(facts.value(failed.fact))
 
 
+@settings(deadline=None)
 @given(facts=FACTS)
 def test_the_scale_never_chooses_in_the_shipped_tables(facts: Facts) -> None:
     for table in TABLES.values():

@@ -125,6 +125,16 @@ z = 3
         assert line is not None
         assert self.TEXT.split("\n")[line - 1].startswith(first)
 
+    def test_brackets_in_a_quoted_header_are_part_of_the_name(self) -> None:
+        source = source_of('[lab."a]b"] # [x]\nc = 1\n[[ row . "]]" ]]\nd = 2\n')
+        assert source.line_of(("lab", "a]b", "c")) == 2
+        assert source.line_of(("row", "]]", 0, "d")) == 4
+
+    def test_a_hostile_header_costs_no_more_than_its_length(self) -> None:
+        spaces = " " * 20_000
+        source = source_of(f'[{spaces}"a]b"{spaces}.{spaces}c{spaces}]{spaces}# ]\nd = 1\n')
+        assert source.line_of(("a]b", "c", "d")) == 2
+
     def test_a_quote_beside_the_closing_ones_opens_nothing(self) -> None:
         source = source_of('a = """\nx""""\nb = [ # "\n]\nc = 1\n')
         assert [source.line_of((key,)) for key in "abc"] == [1, 3, 5]

@@ -53,6 +53,10 @@ class Censoring(StrEnum):
     NOT_DETECTED = "nd"
 
 
+LIMITS_BELOW = frozenset({Censoring.BELOW, Censoring.AT_MOST, Censoring.NOT_DETECTED})
+"""Censorings of results that lie below what is written."""
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Measurement:
     """One reading of one characteristic, as it stands in one cell."""

@@ -7,6 +7,7 @@ from collections.abc import Sequence
 from qcreport.analysis.comparable import Comparable
 from qcreport.analysis.flags import flag
 from qcreport.analysis.outcome import Outcome, Question, decide, sensitivity
+from qcreport.analysis.ranks import overall_by_ranks
 from qcreport.analysis.result import (
     CharacteristicResult,
     GroupResult,
@@ -16,7 +17,7 @@ from qcreport.analysis.result import (
 from qcreport.analysis.screen import Group
 from qcreport.errors import StatisticsError
 from qcreport.measurements import Notice
-from qcreport.plan.model import POOLED
+from qcreport.plan.model import POOLED, RANKS
 from qcreport.rules.facts import SIMILAR
 from qcreport.stats.equivalence import most_serious
 from qcreport.stats.one_way import AnovaResult, anova, supported_digits, welch
@@ -126,6 +127,8 @@ def _variance_table(ready: Comparable) -> Overall | None:
 
 def _overall(outcome: Outcome, table: Overall | None) -> Overall | None:
     """Return the overall test that goes with the procedure and the spread fact; never a gate."""
+    if outcome.procedure in RANKS:
+        return overall_by_ranks(outcome.ready)
     if table is None:
         return None
     if outcome.procedure in POOLED or _similar(outcome):

@@ -8,6 +8,7 @@ from dataclasses import dataclass, replace
 
 from qcreport.analysis.result import NotCompared
 from qcreport.analysis.screen import Group
+from qcreport.measurements import LIMITS_BELOW
 from qcreport.plan.model import ComparisonPlan, Scale
 from qcreport.stats.summary import GroupSummary, summarize
 
@@ -56,6 +57,12 @@ def comparable(groups: Sequence[Group], plan: ComparisonPlan) -> Comparable:
             left.append(NotCompared(label=group.label, n=group.n, reason=reason))
         else:
             kept.append(group)
+    if _limits_on_both_sides(kept):
+        reason = (
+            "Some results are known only as below a limit and others only as above one: no order follows."
+        )
+        left.extend(NotCompared(label=g.label, n=g.n, reason=reason) for g in kept)
+        kept = []
     labels = [g.label for g in kept]
     if plan.reference is not None and plan.reference not in labels:
         reason = f"The reference {plan.reference} cannot be compared, so nothing can be compared with it."
@@ -84,12 +91,19 @@ def _why_not(group: Group, plan: ComparisonPlan) -> str:
     if group.n < plan.smallest_group:
         had = "no value" if group.n == 0 else f"{group.n} of them" if group.n > 1 else "one"
         return f"The plan asks for at least {plan.smallest_group} {unit} in a group; this one has {had}."
+    if 2 * group.censored > group.n:
+        return f"{group.censored} of its {group.n} results, more than half, are known only by a limit."
     if plan.scale is Scale.LOG and any(u.censored is None and u.value <= 0.0 for u in group.units):
         return "It holds a value of 0 or below, which has no logarithm."
     values = group.values
     if max(map(abs, values)) > _LARGEST or 0.0 < max(values) - min(values) < 1.0 / _LARGEST:
         return "Its values are too large, or too close to each other, to compute with; use another unit."
     return ""
+
+
+def _limits_on_both_sides(groups: Sequence[Group]) -> bool:
+    sides = {u.censored in LIMITS_BELOW for g in groups for u in g.units if u.censored is not None}
+    return len(sides) > 1
 
 
 def _scaled(value: float, scale: Scale) -> float:

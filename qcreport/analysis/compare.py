@@ -3,14 +3,15 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import cast
 
 from qcreport.analysis.comparable import Comparable, all_equal
 from qcreport.analysis.procedures import on_means, run_procedure
+from qcreport.analysis.ranks import compare_by_ranks
 from qcreport.analysis.result import PairResult
 from qcreport.measurements import Notice
-from qcreport.plan.model import POOLED, CharacteristicPlan, Scale
+from qcreport.plan.model import POOLED, RANKS, CharacteristicPlan, Scale
 from qcreport.stats.comparison import PairwiseComparison, PosthocResult
 from qcreport.stats.detectable import Procedure, detectable_difference, sample_size_for
 from qcreport.stats.equivalence import all_within_margin, judge
@@ -51,7 +52,7 @@ def compare(
     scale: Scale,
     sizes: bool = True,
 ) -> Comparison | None:
-    """Return every pair's numbers and answer; None for a procedure not based on means.
+    """Return every pair's numbers and answer; None for a procedure of nested designs.
 
     `sizes` asks for the number of results that would settle each open pair, which takes most of the time.
 
@@ -60,6 +61,9 @@ def compare(
     StatisticsError
         Where the procedure cannot answer for these groups.
     """
+    margin = margin_on_scale(characteristic, scale)
+    if procedure in RANKS:
+        return _by_ranks(procedure, ready, characteristic, margin, alpha, scale)
     if not on_means(procedure):
         return None
     summaries: tuple[GroupSummary, ...] = ready.summaries
@@ -73,7 +77,6 @@ def compare(
         reference=ready.reference,
         direction=characteristic.direction,
     )
-    margin = margin_on_scale(characteristic, scale)
     by_label = {s.label: s for s in summaries}
     needed = (
         _Needed(procedure=procedure, n_groups=len(summaries), alpha=alpha, margin=margin) if sizes else None
@@ -85,6 +88,33 @@ def compare(
         pairs=pairs,
         all_within_margin=_all_within(posthoc, by_label, margin, alpha),
         notices=notices,
+    )
+
+
+def _by_ranks(
+    procedure: str,
+    ready: Comparable,
+    characteristic: CharacteristicPlan,
+    margin: Margin,
+    alpha: float,
+    scale: Scale,
+) -> Comparison:
+    found = compare_by_ranks(procedure, ready, characteristic, margin, alpha=alpha)
+    pairs = tuple(
+        replace(
+            p,
+            difference=_difference(p.difference, scale),
+            lower=_back(p.lower, scale),
+            upper=_back(p.upper, scale),
+        )
+        for p in found.pairs
+    )
+    return Comparison(
+        posthoc=found.posthoc,
+        summaries=ready.summaries,
+        pairs=pairs,
+        all_within_margin=None,
+        notices=found.notices,
     )
 
 
@@ -198,7 +228,7 @@ def _pair(
     return PairResult(
         first=comparison.first,
         second=comparison.second,
-        difference=_back(comparison.difference, scale) or 0.0,
+        difference=_difference(comparison.difference, scale),
         se=comparison.se,
         statistic=comparison.statistic,
         df=comparison.df,
@@ -210,6 +240,12 @@ def _pair(
         needed_n=settled_by,
         answer=answer,
     )
+
+
+def _difference(value: float, scale: Scale) -> float:
+    """Return a pair's difference as reported; not a number where no double holds it."""
+    back = _back(value, scale)
+    return math.nan if back is None else back
 
 
 def _back(value: float | None, scale: Scale) -> float | None:

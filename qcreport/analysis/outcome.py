@@ -16,7 +16,7 @@ from qcreport.analysis.facts import Gathered, gather
 from qcreport.analysis.result import ChangedAnswer, PairResult, Sensitivity
 from qcreport.analysis.screen import Group
 from qcreport.errors import StatisticsError
-from qcreport.plan.model import BY_RULES, POOLED, CharacteristicPlan, ComparisonPlan
+from qcreport.plan.model import BY_RULES, POOLED, RANKS, CharacteristicPlan, ComparisonPlan
 from qcreport.rules import Choice, Facts, RulesTable, choose, fixed_by_plan
 from qcreport.rules.facts import CANNOT_BE_JUDGED, SIMILAR
 
@@ -82,7 +82,7 @@ def _choice(facts: Facts, question: Question) -> Choice:
 def _run(procedure: str, ready: Comparable, question: Question) -> tuple[Comparison | None, str]:
     if procedure == "none":
         return None, "Nothing can be compared."
-    if ready.censored and procedure not in ("steel", "steel_dwass"):
+    if ready.censored and procedure not in RANKS:
         return None, f"{procedure} needs numbers, but some results are known only by a limit."
     try:
         comparison = compare(
@@ -104,6 +104,8 @@ def sensitivity(outcome: Outcome, question: Question) -> Sensitivity | None:
     """Return the one alternative: the other variance policy's procedure and the answers it would change."""
     if outcome.comparison is None:
         return None
+    if outcome.procedure in RANKS:
+        return None  # ranks do not rest on how spread is judged
     pooled = outcome.procedure in POOLED
     facts = replace(outcome.gathered.facts, spread=CANNOT_BE_JUDGED if pooled else SIMILAR)
     procedure = choose(question.rules, facts).procedure

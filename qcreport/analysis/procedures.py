@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from typing import Final
+from typing import Final, Literal
 
 from qcreport.plan.model import Direction
 from qcreport.stats.comparison import PosthocResult
@@ -25,7 +25,7 @@ _WITH_REFERENCE: Final[dict[str, Callable[..., PosthocResult]]] = {
     "dunnett_unequal": dunnett_unequal,
     "dunnett_weighted": dunnett_weighted,
 }
-_DIRECTIONS: Final = {
+DIRECTIONS: Final[dict[Direction, Literal["both", "lower", "higher"]]] = {
     Direction.BOTH: "both",
     Direction.LOWER_MATTERS: "lower",
     Direction.HIGHER_MATTERS: "higher",
@@ -55,5 +55,5 @@ def run_procedure(
     if procedure in _EVERY_PAIR:
         return _EVERY_PAIR[procedure](groups, alpha=alpha)
     return _WITH_REFERENCE[procedure](
-        groups, reference=reference, alpha=alpha, direction=_DIRECTIONS[direction]
+        groups, reference=reference, alpha=alpha, direction=DIRECTIONS[direction]
     )

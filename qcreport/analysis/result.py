@@ -164,7 +164,8 @@ class PairResult:
     second: str
     """Label; with a reference the reference."""
     difference: float
-    """first − second in the unit; a ratio of geometric means on the log scale."""
+    """first − second in the unit; a ratio of geometric means on the log scale; for ranks the Hodges–Lehmann
+    shift, not finite where limits leave none."""
     se: float | None
     """Standard error of the difference (natural log units on the log scale)."""
     statistic: float | None

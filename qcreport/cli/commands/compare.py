@@ -11,7 +11,7 @@ from pathlib import Path
 
 from qcreport.canonical import sha256_hex
 from qcreport.cli.now import now
-from qcreport.cli.run import REFUSED, print_error
+from qcreport.cli.run import DONE, REFUSED, print_error
 from qcreport.cli.words import outcome_lines
 from qcreport.durable import make_folder, write_durably
 from qcreport.errors import EnvironmentFailedError, ExportRefusedError, UsageError
@@ -23,34 +23,42 @@ from qcreport.workbook.layout_try import layout_try_json
 
 
 def run(arguments: argparse.Namespace) -> int:
-    """Compare one export; it stays where it is, refused or not."""
+    """Compare one export by every plan that fits; it stays where it is, refused or not."""
     site = load_site(Path(arguments.site))
     received = _received(Path(arguments.export), site)
     with opened(site, now, workers=1, seals=not arguments.no_report, progress=_progress) as work:
+        if len(received.data) > site.limits.max_file_bytes:
+            return _refused(work, received, _too_large(Path(arguments.export), site), arguments)
         work.pipeline.receive(received)
         try:
             plans = _plans(arguments, site, received.name)
-            outcomes = [_answer(work, received, settings, arguments) for settings in plans]
         except ExportRefusedError as error:
             return _refused(work, received, error, arguments)
+        code = DONE
+        for settings in plans:
+            try:
+                outcome = _answer(work, received, settings, arguments)
+            except ExportRefusedError as error:
+                code = _refused(work, received, error, arguments, plan=settings.plan.name)
+            else:
+                _tell(outcome, arguments, several=len(plans) > 1)
+    return code
+
+
+def _tell(outcome: Outcome, arguments: argparse.Namespace, *, several: bool) -> None:
     if arguments.out is not None:
-        for outcome in outcomes:
-            _write_out(Path(arguments.out), outcome, several=len(outcomes) > 1)
+        _write_out(Path(arguments.out), outcome, several=several)
     if arguments.json:
-        for outcome in outcomes:
-            sys.stdout.write(outcome.result.decode("utf-8"))
+        sys.stdout.write(outcome.result.decode("utf-8"))
     else:
-        for outcome in outcomes:
-            print("\n".join(outcome_lines(outcome)))
-    return 0
+        print("\n".join(outcome_lines(outcome)))
 
 
 def _received(path: Path, site: Site) -> Received:
-    """Read the export once, within the site's limit."""
-    limit = site.limits.max_file_bytes
+    """Read the export once; of one above the site's limit only the beginning."""
     try:
         with path.open("rb") as stream:
-            data = stream.read(limit + 1)
+            data = stream.read(site.limits.max_file_bytes + 1)
     except (FileNotFoundError, IsADirectoryError) as error:
         raise UsageError(f"{path}: {error.strerror}. Name an export.", file=str(path)) from None
     except OSError as error:
@@ -61,6 +69,17 @@ def _received(path: Path, site: Site) -> Received:
         sha256=sha256_hex(data),
         claim=f"compare-{secrets.token_hex(8)}",
         actor=_account(),
+    )
+
+
+def _too_large(path: Path, site: Site) -> ExportRefusedError:
+    return ExportRefusedError(
+        "too_large",
+        file=path.name,
+        where="the whole file",
+        found=f"The file has {path.stat().st_size:,} bytes.",
+        expected=f"At most {site.limits.max_file_bytes:,} bytes (the limit of this site).",
+        next_step="Export fewer results at a time, or have the limit in site.toml raised.",
     )
 
 
@@ -90,14 +109,23 @@ def _answer(
         )
     except ExportRefusedError as error:
         if error.code == "already_read":
-            raise UsageError(f'{error.found} {error.expected} Give --reason "…".') from None
+            raise UsageError(f'{error.found} Every further run must be explained: --reason "…".') from None
         raise
 
 
 def _refused(
-    work: Opened, received: Received, error: ExportRefusedError, arguments: argparse.Namespace
+    work: Opened,
+    received: Received,
+    error: ExportRefusedError,
+    arguments: argparse.Namespace,
+    *,
+    plan: str = "",
 ) -> int:
-    work.records.refuse(received.claim, error, export_sha256=received.sha256, folder="", actor=received.actor)
+    whole = error.code != "too_large"  # of a larger file only the beginning was read: no digest of it
+    sha256 = received.sha256 if whole else None
+    work.records.refuse(
+        received.claim, error, export_sha256=sha256, folder="", actor=received.actor, plan_name=plan
+    )
     if arguments.json:
         print(json.dumps(layout_try_json(error), ensure_ascii=False, indent=1))
     print_error(error, arguments)

@@ -59,7 +59,7 @@ def run(arguments: argparse.Namespace) -> int:
     for _, folder in audience.refused:
         print(f"  {folder}/why.txt")
     print(f"Next: drop an export into {root}/inbox and run qcreport watch --once --site {root}")
-    print(f"      or change a plan in {root}/config/plans; a reported export then needs a reason to run again:")
+    print(f"      or change a plan in {root}/config/plans; a reported export then needs a reason:")
     print(f'      qcreport compare EXPORT --reason "…" --site {root}')
     return DONE if all_hold else ANSWER_IS_NO
 

@@ -55,7 +55,7 @@ class Axis:
         if (high - low) * 3 > most * 2:
             values = [10.0**e for e in range(low, high + 1)]
         kept = [v for v in values if self.low * 0.999999 <= v <= self.high * 1.000001]
-        return kept, max(0, -low)
+        return kept, max(0, -math.floor(math.log10(kept[0]) + 1e-9))
 
 
 def round_step(raw: float) -> tuple[float, int]:

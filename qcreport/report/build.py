@@ -53,20 +53,17 @@ def build_model(
     ConfigError
         Where there are no texts in the context's language.
     """
+    missing: set[str] = set()
+    result, measurements = with_printable_texts((result, measurements), missing)
+    plan, context = with_printable_texts((plan, context), missing)
     words = words_for(context.language, plan.groups)
     plans = {c.name: c for c in plan.characteristics}
     all_numbers = tuple(
         Numbers(result=r, words=words, margin_text=_percent_margin(plans.get(r.name)))
         for r in result.characteristics
     )
-    missing: set[str] = set()
-    draft = _model(result, measurements, plan, context, words, all_numbers, figure_on_first_page, ())
-    with_printable_texts(draft, missing)
-    if not missing:
-        return draft
     said = tuple(f"U+{ord(c):04X}" for c in sorted(missing))
-    draft = _model(result, measurements, plan, context, words, all_numbers, figure_on_first_page, said)
-    return with_printable_texts(draft, missing)
+    return _model(result, measurements, plan, context, words, all_numbers, figure_on_first_page, said)
 
 
 def _percent_margin(plan: CharacteristicPlan | None) -> str:

@@ -44,7 +44,7 @@ def pair_sentence(pair: PairResult, numbers: Numbers, *, margin: str) -> str:
         return words.pair_not_compared(pair.first, pair.second)
     range_text = numbers.range_with_unit(view)
     if pair.answer == "not_settled":
-        text = words.not_settled(view.first, view.second, range_text, at_once, margin)
+        text = words.not_settled(view.first, view.second, range_text, at_once, margin, ratio=numbers.log)
         return text if pair.needed_n is None else f"{text} {words.would_settle(pair.needed_n)}"
     if pair.answer == "equivalent":
         return words.pair_within(view.first, view.second, range_text, at_once, margin)
@@ -94,9 +94,10 @@ def first_page_answer(numbers: Numbers, *, most: int, title: str, target: str, f
         lines = [_line(_furthest(ordered, result), numbers, words.none_shown(len(ordered), at_once))]
         return _answer(title, lines, _left_out(numbers), "", target)
     lines = []
+    beside = [higher_first(p, result) for p in serious[:most]]
     for index, pair in enumerate(serious[:most]):
         text = pair_sentence(pair, numbers, margin=said if index == 0 else margin)
-        lines.append(_line(pair, numbers, text))
+        lines.append(_line(pair, numbers, text, beside))
     within = len(ordered) - len(serious)
     rest = " ".join(filter(None, (words.others_within(within) if within else "", _left_out(numbers))))
     hidden = len(serious) - len(lines)
@@ -107,12 +108,16 @@ def _answer(title: str, lines: Sequence[AnswerLine], rest: str, more: str, targe
     return Answer(title=title, lines=tuple(lines), rest=rest, more=more, target=target)
 
 
-def _line(pair: PairResult | None, numbers: Numbers, text: str) -> AnswerLine:
+def _line(
+    pair: PairResult | None, numbers: Numbers, text: str, beside: Sequence[PairView] = ()
+) -> AnswerLine:
     answer = "not_compared" if pair is None else pair.answer
     view = None if pair is None else higher_first(pair, numbers.result)
     title = numbers.words.mark_alt(answer, view, numbers.decimals)
     return AnswerLine(
-        mark=answer_mark(view, log=numbers.log, title=title), word=register_word(answer), text=text
+        mark=answer_mark(view, log=numbers.log, title=title, beside=beside),
+        word=register_word(answer),
+        text=text,
     )
 
 

@@ -9,10 +9,12 @@ from qcreport.analysis.result import CharacteristicResult, GroupResult, Overall
 from qcreport.plan.model import POOLED
 from qcreport.report.blocks import Block, Column, Formula, Paragraph, Section, Subheading, Table
 from qcreport.report.numbers import MISSING, Numbers
-from qcreport.report.pairs import PairView, higher_first, most_serious_first
+from qcreport.report.pairs import PairView, higher_first, most_serious_first, n_compared
 from qcreport.report.rounding import fixed, shortest, significant
+from qcreport.report.weighted_line import weighted_line
 
 RANGE_PROCEDURES = frozenset({"tukey_hsd", "tukey_kramer", "games_howell"})
+PAIRS_WORKED = 40
 _DIGITS = 5
 
 
@@ -44,6 +46,8 @@ def _characteristic(numbers: Numbers) -> list[Block]:
         hsd = numbers.amount(result.hsd) if not numbers.log else significant(result.hsd, _DIGITS)
         blocks.append(Paragraph(text=words.hsd_reads(hsd)))
     blocks.append(_table(numbers))
+    if len(result.pairs) > PAIRS_WORKED:
+        blocks.append(Paragraph(text=words.further_pairs(len(result.pairs) - PAIRS_WORKED), note=True))
     return blocks
 
 
@@ -81,9 +85,10 @@ def worked_lines(view: PairView, numbers: Numbers) -> list[str]:
     se = significant(pair.se, _DIGITS)
     if result.procedure in RANGE_PROCEDURES:
         q = fixed(math.sqrt(2) * pair.critical_value, 4)
-        of = words.studentized(str(len(result.groups)), _df(pair.df))
+        of = words.studentized(str(n_compared(result)), _df(pair.df))
         lines.append(words.half_width_q(q, se, printed_half, of))
     else:
+        lines += [line for line in (weighted_line(view, numbers),) if line is not None]
         of = words.critical_source(result.procedure, _df(pair.df), str(len(result.pairs)))
         lines.append(words.half_width(fixed(pair.critical_value, 4), se, printed_half, of))
     difference = math.log(view.difference) if numbers.log else view.difference
@@ -108,7 +113,9 @@ def _hsd_line(result: CharacteristicResult, ms_within: float, numbers: Numbers) 
     q = fixed(math.sqrt(2) * (critical or 0.0), 4)
     df = _df(result.pairs[0].df)
     hsd = significant(result.hsd or 0.0, _DIGITS)
-    n, k = str(result.groups[0].n), str(len(result.groups))
+    named = {label for p in result.pairs for label in (p.first, p.second)}
+    n = str(next(g.n for g in result.groups if g.label in named))
+    k = str(n_compared(result))
     return numbers.words.hsd(q, significant(ms_within, _DIGITS), n, hsd, k, df)
 
 
@@ -141,7 +148,7 @@ def _table(numbers: Numbers) -> Table:
     )
     return Table(
         columns=columns,
-        rows=tuple(_row(higher_first(p, result), numbers) for p in most_serious_first(result)),
+        rows=tuple(_row(higher_first(p, result), numbers) for p in most_serious_first(result)[:PAIRS_WORKED]),
     )
 
 

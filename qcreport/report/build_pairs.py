@@ -148,7 +148,7 @@ def _groups_table(numbers: Numbers) -> Table:
         for i, (h, s) in enumerate(zip(heads, shares, strict=True))
     )
     apart = _shown_different(result)
-    groups_of = same_letters([g.label for g in result.groups], apart) if letters else {}
+    groups_of = same_letters(result.groups, apart) if letters else {}
     rows = [_group_row(g, numbers, apart, groups_of) for g in result.groups]
     return Table(columns=columns, rows=tuple(rows))
 

@@ -9,7 +9,7 @@ from qcreport.measurements import MeasurementSet
 from qcreport.plan.model import ComparisonPlan
 from qcreport.report.blocks import Block, Column, Paragraph, Section, Subheading, Table
 from qcreport.report.numbers import MISSING, Numbers
-from qcreport.report.rounding import fixed, shortest, significant
+from qcreport.report.rounding import fixed, shortest, significant, trimmed
 
 TEXTBOOK = "textbook"
 
@@ -62,7 +62,7 @@ def _check_row(check: Check, numbers: Numbers) -> tuple[str, ...]:
         MISSING if check.statistic is None else significant(check.statistic, 4),
         ", ".join(shortest(d) if float(d).is_integer() else fixed(d, 2) for d in check.df) or MISSING,
         numbers.p(check.p),
-        MISSING if check.threshold is None else significant(check.threshold, 3),
+        MISSING if check.threshold is None else trimmed(check.threshold, 3),
         numbers.words.check_says(check.met, check.note),
     )
 

@@ -21,10 +21,12 @@ class OwnAssetsFetcher(URLFetcher):  # type: ignore[misc] # the base has no type
 
     def __init__(self) -> None:
         super().__init__(allowed_protocols=(), allow_redirects=False, fail_on_errors=True)
+        self.refused: list[str] = []
 
     def fetch(self, url: str, headers: Any = None) -> URLFetcherResponse:
         """Return one of our own fonts, or stop."""
         name = url.removeprefix(SCHEME)
         if not url.startswith(SCHEME) or name not in FONT_FILES:
+            self.refused.append(url)  # a drawing inside a drawing swallows the error
             raise RefusedFetchError(url)
         return URLFetcherResponse(url, font_bytes(name), {"Content-Type": "font/ttf"})

@@ -18,7 +18,7 @@ from qcreport.report.pairs import (
     null_of,
     widest_of_each_group,
 )
-from qcreport.report.rounding import shortest
+from qcreport.report.rounding import trimmed
 from qcreport.report.shapes import Bar, Drawing, Label, Line, Shape
 from qcreport.report.words_en_figure import FigureWords
 
@@ -126,7 +126,7 @@ def _ground(frame: _Frame) -> list[Shape]:
     named = [(zero, frame.words.no_difference(), "zero")]
     for edge in frame.margin:
         if edge is not None and axis.covers(edge):
-            text = frame.words.margin_edge(shortest(edge), signed=not axis.logarithmic and edge > 0)
+            text = frame.words.margin_edge(trimmed(edge, 6), signed=not axis.logarithmic and edge > 0)
             named.append((axis.at(edge), text, "corridor-edge"))
     for x, _, style in named:
         shapes.append(Line(x1=x, y1=TOP, x2=x, y2=frame.bottom, style=style))

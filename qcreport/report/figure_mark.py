@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 
 from qcreport.analysis.result import CharacteristicResult
-from qcreport.report.axis import Axis
+from qcreport.report.axis import Axis, padded
 from qcreport.report.figure_apart import interval_bar
 from qcreport.report.glyphs import lines_of, width_of
 from qcreport.report.pairs import PairView
@@ -17,14 +18,17 @@ GRID_WIDTH = 430.0
 CELL_WIDTH, CELL_HEIGHT = 10.0, 11.5
 
 
-def answer_mark(view: PairView | None, *, log: bool, title: str) -> Drawing:
-    """Return the bar of one pair at 18 × 4 mm; an empty line where nothing was compared."""
+def answer_mark(view: PairView | None, *, log: bool, title: str, beside: Sequence[PairView] = ()) -> Drawing:
+    """Return the bar of one pair at 18 × 4 mm; an empty line where nothing was compared.
+
+    Marks that stand `beside` each other share one scale, so that they can be compared.
+    """
     shapes: list[Shape] = []
     middle = MARK_HEIGHT / 2
     if view is None or not view.has_interval:
         shapes.append(Line(x1=1, y1=middle, x2=MARK_WIDTH - 1, y2=middle, style="row"))
         return _mark(shapes, title)
-    axis = _mark_axis(view, log=log)
+    axis = _mark_axis((view, *beside), log=log)
     below, above = view.margin
     if view.has_margin:
         left = axis.left if below is None else axis.inside(below)
@@ -45,14 +49,12 @@ def _mark(shapes: list[Shape], title: str) -> Drawing:
     return Drawing(width=MARK_WIDTH, height=MARK_HEIGHT, title=title, shapes=tuple(shapes))
 
 
-def _mark_axis(view: PairView, *, log: bool) -> Axis:
-    known = [x for x in (view.low, view.high, view.difference, *view.margin) if x is not None]
+def _mark_axis(views: Sequence[PairView], *, log: bool) -> Axis:
+    known = [x for v in views for x in (v.low, v.high, v.difference, *v.margin) if x is not None]
     usable = [x for x in known if math.isfinite(x) and (x > 0 or not log)]
-    if log:
-        reach = math.exp(max([abs(math.log(x)) for x in usable] + [0.01]) * 1.08)
-        return Axis(low=1 / reach, high=reach, left=1, right=MARK_WIDTH - 1, logarithmic=True)
-    reach = max([abs(x) for x in usable] + [0.0]) * 1.08 or 1.0
-    return Axis(low=-reach, high=reach, left=1, right=MARK_WIDTH - 1, logarithmic=False)
+    ends = [1.0 if log else 0.0, *usable]
+    low, high = padded(min(ends), max(ends), logarithmic=log)
+    return Axis(low=low, high=high, left=1, right=MARK_WIDTH - 1, logarithmic=log)
 
 
 def pair_grid(result: CharacteristicResult, words: FigureWords) -> Drawing:
@@ -69,7 +71,8 @@ def pair_grid(result: CharacteristicResult, words: FigureWords) -> Drawing:
         text = lines_of(name, 8, 125, 1)[0]
         shapes.append(Label(x=row * cell + 2, y=y + 7.6, text=text, anchor="start", style="note"))
     height = len(labels) * CELL_HEIGHT + 4
-    shapes += _legend(height + 4, words)
+    has_margin = any(m is not None for m in result.margin)
+    shapes += _legend(height + 4, words.grid_legend(has_margin=has_margin))
     return Drawing(width=GRID_WIDTH, height=height + 20, title=words.grid_alt(result), shapes=tuple(shapes))
 
 
@@ -89,10 +92,10 @@ def _cell(answer: str, x: float, y: float, width: float) -> list[Shape]:
     return [Line(x1=x, y1=y + height / 2, x2=x + width, y2=y + height / 2, style="row")]
 
 
-def _legend(y: float, words: FigureWords) -> list[Shape]:
+def _legend(y: float, entries: Sequence[tuple[str, str]]) -> list[Shape]:
     shapes: list[Shape] = []
     x = 0.0
-    for answer, text in words.grid_legend():
+    for answer, text in entries:
         shapes += _cell(answer, x, y, CELL_WIDTH - 1.5)
         shapes.append(Label(x=x + 12, y=y + 6.8, text=text, anchor="start", style="note"))
         x += 12 + width_of(text, 8) + 14

@@ -55,20 +55,20 @@ def printable(text: str, missing: set[str]) -> str:
 
 
 @cache
-def _advances() -> dict[str, float]:
-    font = _font("sans-400")
+def _advances(face: str) -> dict[str, float]:
+    font = _font(face)
     metrics, scale = font["hmtx"], 1 / font["head"].unitsPerEm
     return {chr(code): metrics[glyph][0] * scale for code, glyph in font.getBestCmap().items()}
 
 
-def width_of(text: str, size: float) -> float:
-    """Return the width of `text` in the sans face at `size` points."""
-    advances = _advances()
+def width_of(text: str, size: float, face: str = "sans-400") -> float:
+    """Return the width of `text` in one of the pinned faces at `size` points."""
+    advances = _advances(face)
     return size * sum(advances.get(_HYPHENS.get(c, c), 0.6) for c in text)
 
 
 def lines_of(text: str, size: float, width: float, most: int) -> tuple[str, ...]:
-    """Return `text` broken into at most `most` lines of `width` points; what does not fit ends in ….
+    """Return `text` broken into at most `most` lines of `width` points; what does not fit loses its middle.
 
     A break falls after a space or hyphen where one is near, else anywhere.
     """
@@ -80,13 +80,20 @@ def lines_of(text: str, size: float, width: float, most: int) -> tuple[str, ...]
             lines.append(rest)
             break
         if len(lines) == most - 1:
-            count = _fitting(rest, size, width - width_of("…", size))
-            lines.append(rest[: max(count, 1)] + "…")
+            lines.append(_shortened(rest, size, width))
             break
         cut = _break_before(rest, max(count, 1))
         lines.append(rest[:cut].rstrip())
         rest = rest[cut:].lstrip()
     return tuple(lines) or ("",)
+
+
+def _shortened(text: str, size: float, width: float) -> str:
+    """Return `text` without its middle: names of one kind differ at their ends as often as at their heads."""
+    room = width - width_of("…", size)
+    head = text[: max(_fitting(text, size, room * 0.6), 1)]
+    tail = text[len(text) - max(_fitting(text[::-1], size, room * 0.4), 1) :]
+    return f"{head.rstrip()}…{tail.lstrip()}"
 
 
 def _fitting(text: str, size: float, width: float) -> int:

@@ -11,6 +11,7 @@ from qcreport.plan.model import ComparisonPlan
 from qcreport.report.attachment import Attachment
 from qcreport.report.build import build_model
 from qcreport.report.render import RenderedReport, lay_out, write
+from qcreport.report.room import has_room
 from qcreport.report.templates import TemplateSet
 
 
@@ -40,6 +41,8 @@ def render_job(job: RenderJob) -> RenderedReport:
     from qcreport.report.page_checks import page_with_fields
 
     model = build_model(job.result, job.measurements, job.plan, job.context)
+    if model.first.values is not None and not has_room(model.first, model.page_size):
+        model = build_model(job.result, job.measurements, job.plan, job.context, figure_on_first_page=False)
     document = lay_out(model, job.templates)
     if page_with_fields(document) > 0 and model.first.values is not None:
         model = build_model(job.result, job.measurements, job.plan, job.context, figure_on_first_page=False)

@@ -8,7 +8,15 @@ from dataclasses import dataclass
 from qcreport.analysis.result import CharacteristicResult
 from qcreport.plan.model import RANKS
 from qcreport.report.pairs import PairView, is_log, null_of
-from qcreport.report.rounding import LARGEST_DECIMALS, apart_from, fixed, probability, shortest, significant
+from qcreport.report.rounding import (
+    LARGEST_DECIMALS,
+    apart_from,
+    fixed,
+    probability,
+    shortest,
+    significant,
+    trimmed,
+)
 from qcreport.report.words_en import Words
 
 MISSING = "–"
@@ -91,11 +99,11 @@ class Numbers:
             return ""
         if self.log:
             return self.words.ratio_margin(
-                None if below is None else shortest(below), None if above is None else shortest(above)
+                None if below is None else trimmed(below, 6), None if above is None else trimmed(above, 6)
             )
         text = self.words.margin(
-            None if below is None else shortest(abs(below)),
-            None if above is None else shortest(abs(above)),
+            None if below is None else trimmed(abs(below), 6),
+            None if above is None else trimmed(abs(above), 6),
             self.result.unit,
         )
         return f"{self.margin_text} ({text})" if self.margin_text else text

@@ -54,11 +54,16 @@ def require_inside_pages(document: Any) -> None:
 
 
 def _boxes(box: Any) -> Iterator[Any]:
-    for child in getattr(box, "children", ()):
-        child = getattr(child, "_box", child)
-        if isinstance(getattr(child, "width", None), int | float) and hasattr(child, "position_x"):
-            yield child
-        yield from _boxes(child)
+    """Yield what is painted: pieces of text, and drawings."""
+    from weasyprint.formatting_structure.boxes import ReplacedBox, TextBox
+
+    waiting = [box]
+    while waiting:
+        found = waiting.pop()
+        found = getattr(found, "_box", found)  # stands for a positioned box
+        if isinstance(found, TextBox | ReplacedBox):
+            yield found
+        waiting.extend(reversed(getattr(found, "children", ())))
 
 
 def page_of(document: Any, anchor: str) -> int | None:

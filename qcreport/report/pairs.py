@@ -152,3 +152,8 @@ def widest_of_each_group(result: CharacteristicResult) -> tuple[PairResult, ...]
             kept.append(pair)
             wanted -= {pair.first, pair.second}
     return tuple(kept)
+
+
+def n_compared(result: CharacteristicResult) -> int:
+    """Return how many groups take part in the comparison; described ones do not count."""
+    return len({label for p in result.pairs for label in (p.first, p.second)})

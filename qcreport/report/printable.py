@@ -1,24 +1,31 @@
-"""Replace, in a whole model, what the pinned fonts cannot draw."""
+"""Replace, in everything that is to be printed, what the pinned fonts cannot draw."""
 
 from __future__ import annotations
 
 from dataclasses import fields, is_dataclass, replace
-from typing import Any
+from typing import Any, TypeVar
 
 from qcreport.report.glyphs import printable
-from qcreport.report.model import ReportModel
+
+T = TypeVar("T")
 
 
-def with_printable_texts(model: ReportModel, missing: set[str]) -> ReportModel:
-    """Return the model with every text printable; characters that were replaced are added to `missing`."""
-    cleaned = _cleaned(model, missing)
-    assert isinstance(cleaned, ReportModel)  # noqa: S101 - `_cleaned` keeps each type
+def with_printable_texts(value: T, missing: set[str]) -> T:
+    """Return `value` (a frozen dataclass, tuple or text) with every text inside it printable.
+
+    Characters that were replaced are added to `missing`. Done before anything is measured or broken into
+    lines, so that names in figures and sentences agree.
+    """
+    cleaned: T = _cleaned(value, missing)
     return cleaned
 
 
 def _cleaned(value: Any, missing: set[str]) -> Any:
     if isinstance(value, str):
-        return printable(value, missing)
+        if value.isascii() and value.isprintable():
+            return value
+        text = printable(value, missing)
+        return value if text == value else text
     if isinstance(value, tuple):
         items = [_cleaned(item, missing) for item in value]
         return tuple(items) if any(a is not b for a, b in zip(items, value, strict=True)) else value

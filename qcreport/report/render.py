@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
+import atexit
 import gc
 import io
 import threading
+import warnings
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
@@ -60,19 +62,14 @@ def lay_out(model: ReportModel, templates: TemplateSet) -> Any:
     """Return the laid-out pages, checked: own fonts, nothing off the page."""
     from weasyprint import HTML
 
-    from qcreport.report.fetcher import OwnAssetsFetcher, RefusedFetchError
+    from qcreport.report.fetcher import OwnAssetsFetcher
     from qcreport.report.page_checks import require_inside_pages, require_own_fonts
 
     html = render_html(model, templates)
-    try:
-        with _LOCK, collector_at_rest():
-            fonts, style = _style(model.page_size, templates)
-            document = HTML(string=html, url_fetcher=OwnAssetsFetcher()).render(
-                font_config=fonts, stylesheets=[style]
-            )
-    except RefusedFetchError as error:
-        fault = Fault(text=f"may not fetch anything: {error}", file="templates")
-        raise ConfigError((fault,)) from None
+    fetcher = OwnAssetsFetcher()
+    with at_work(fetcher):
+        fonts, style = _style(model.page_size, templates)
+        document = HTML(string=html, url_fetcher=fetcher).render(font_config=fonts, stylesheets=[style])
     require_own_fonts(document)
     require_inside_pages(document)
     return document
@@ -99,7 +96,7 @@ def write(document: Any, model: ReportModel, attachments: Sequence[Attachment]) 
         )
         for a in given
     ]
-    with _LOCK, collector_at_rest():
+    with at_work(document.url_fetcher):
         pdf = document.write_pdf(
             pdf_variant="pdf/a-3a", pdf_tags=True, attachments=inside, finisher=Finisher(given)
         )
@@ -107,14 +104,32 @@ def write(document: Any, model: ReportModel, attachments: Sequence[Attachment]) 
 
 
 @contextmanager
-def collector_at_rest() -> Iterator[None]:
-    """Let the collector of cycles look less often: a layout makes many objects and drops few."""
+def at_work(fetcher: Any) -> Iterator[None]:
+    """Guard a piece of work of the layout library.
+
+    One thread at a time; what a page may not fetch is told as a fault of the templates; the collector of
+    cycles looks less often, since a layout makes many objects and drops few; and the library may leave its
+    own colour profile open.
+    """
+    from qcreport.report.fetcher import RefusedFetchError
+
     before = gc.get_threshold()
-    gc.set_threshold(100_000, before[1], before[2])
-    try:
-        yield
-    finally:
-        gc.set_threshold(*before)
+    with _LOCK, warnings.catch_warnings():
+        warnings.simplefilter("ignore", ResourceWarning)
+        gc.set_threshold(1_000_000, before[1], before[2])
+        try:
+            yield
+        except RefusedFetchError:
+            _require_nothing_refused(fetcher.refused)
+        finally:
+            gc.set_threshold(*before)
+    _require_nothing_refused(fetcher.refused)
+
+
+def _require_nothing_refused(refused: Sequence[str]) -> None:
+    if refused:
+        fault = Fault(text=f"may not fetch anything; a page asked for {refused[0][:120]!r}", file="templates")
+        raise ConfigError((fault,)) from None
 
 
 @cache
@@ -125,5 +140,6 @@ def _style(page_size: str, templates: TemplateSet) -> tuple[Any, Any]:
     from qcreport.report.fetcher import OwnAssetsFetcher
 
     fonts = FontConfiguration()
+    atexit.register(_style.cache_clear)  # its fonts must go before the interpreter takes its modules apart
     css = CSS(string=style_text(page_size, templates), font_config=fonts, url_fetcher=OwnAssetsFetcher())
     return fonts, css

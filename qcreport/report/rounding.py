@@ -107,6 +107,12 @@ def shortest(value: float) -> str:
     return _with_minus(text)
 
 
+def trimmed(value: float, digits: int) -> str:
+    """Return `value` with at most `digits` significant digits and no zeros at the end of its decimals."""
+    text = significant(value, digits)
+    return text.rstrip("0").rstrip(".") if "." in text and TIMES not in text else text
+
+
 def probability(p: float, *, near: float | None = None) -> str:
     """Return a tail probability with two significant digits; more where it would read as `near`.
 

@@ -3,18 +3,18 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from functools import lru_cache
 
-from jinja2 import DictLoader, StrictUndefined, TemplateError, TemplateSyntaxError
+from jinja2 import FunctionLoader, StrictUndefined, TemplateError, TemplateSyntaxError
 from jinja2.sandbox import ImmutableSandboxedEnvironment
 from markupsafe import Markup, escape
 
 from qcreport.canonical import sha256_hex
 from qcreport.errors import ConfigError, Fault
 from qcreport.report.assets import page_names, page_text, shipped_templates
-from qcreport.report.shapes import STYLES
+from qcreport.report.shapes import BASELINE, STYLES
 
 LAB_FILES: tuple[str, ...] = ("footer.html", "letterhead.html", "remark.html", "style.css")
 """What the laboratory may restyle."""
@@ -109,9 +109,15 @@ def _bare_environment() -> ImmutableSandboxedEnvironment:
 def environment(templates: TemplateSet) -> ImmutableSandboxedEnvironment:
     """Return the sandbox in which the pages are filled in."""
     env = _bare_environment()
-    env.loader = DictLoader(dict(templates.texts))
+    texts = dict(templates.texts)
+
+    def found(name: str) -> tuple[str, str, Callable[[], bool]] | None:
+        return (texts[name], name, lambda: True) if name in texts else None
+
+    env.loader = FunctionLoader(found)  # with file names, so that a fault has its place
     env.filters["typeset"] = typeset
     env.globals["styles"] = {name: Markup(text) for name, text in STYLES.items()}  # noqa: S704 - our own constants
+    env.globals["baseline"] = BASELINE
     return env
 
 
@@ -131,11 +137,8 @@ def template_fault(error: TemplateError) -> ConfigError:
     file, line = "templates", None
     trace = error.__traceback__
     while trace is not None:
-        name = trace.tb_frame.f_globals.get("__name__")
-        code_file = trace.tb_frame.f_code.co_filename
-        if code_file.startswith("lab/"):
-            file, line = f"templates/{code_file.removeprefix('lab/')}", trace.tb_lineno
-        elif name is None and code_file == "<template>":
-            line = trace.tb_lineno
+        name = trace.tb_frame.f_code.co_filename
+        if name.startswith("lab/"):
+            file, line = f"templates/{name.removeprefix('lab/')}", trace.tb_lineno
         trace = trace.tb_next
     return ConfigError((Fault(text=f"cannot be filled in: {error}", file=file, line=line),))

@@ -81,11 +81,14 @@ class AnswerWords(FigureWords):
         """Return the sentence of `within_margin`."""
         return f"{stem}, by less than the margin of {margin.rstrip(',')}."
 
-    def not_settled(self, first: str, second: str, range_text: str, at_once: str, margin: str) -> str:
+    def not_settled(
+        self, first: str, second: str, range_text: str, at_once: str, margin: str, *, ratio: bool
+    ) -> str:
         """Return the sentence of `not_settled`."""
+        against = "divided by" if ratio else "minus"
         return (
             f"{first} and {second}: not settled against the margin of {margin.rstrip(',')}, "
-            f"{range_text} ({first} minus {second}, {at_once})."
+            f"{range_text} ({first} {against} {second}, {at_once})."
         )
 
     def would_settle(self, n: int) -> str:

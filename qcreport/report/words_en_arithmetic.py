@@ -15,6 +15,10 @@ class ArithmeticWords(FigureWords):
             "numbers."
         )
 
+    def further_pairs(self, n: int) -> str:
+        """Return where the pairs are that the table has no room for."""
+        return f"{n} further pairs, less serious ones, stand in result.json with the same numbers."
+
     def log_intro(self) -> str:
         """Return that the arithmetic is on logarithms."""
         return (
@@ -79,6 +83,15 @@ class ArithmeticWords(FigureWords):
             ),
             "nested": f"from the error term between the independent units on {df} df",
         }.get(procedure, f"on {df} df")
+
+    def weighted(
+        self, c_first: str, first: str, c_second: str, second: str, value: str, dfs: tuple[str, ...]
+    ) -> str:
+        """Return the mean of two critical values, weighted by the squared standard errors."""
+        return (
+            f"critical value = ({c_first} × {first} + {c_second} × {second}) ÷ ({first} + {second}) "
+            f"= {value}, with s² ÷ n as weights and the values on {' and '.join(dfs)} df"
+        )
 
     def nested_se(self, se: str) -> str:
         """Return the standard error of a nested comparison."""

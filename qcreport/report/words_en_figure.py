@@ -110,8 +110,10 @@ class FigureWords:
         said = ", ".join(f"{n} {_SHORT.get(a, a)}" for a, n in counts.items() if n)
         return f"All {len(result.pairs)} pairs of {result.title} as a grid of marks: {said}."
 
-    def grid_legend(self) -> tuple[tuple[str, str], ...]:
+    def grid_legend(self, *, has_margin: bool) -> tuple[tuple[str, str], ...]:
         """Return what each mark of the grid means."""
+        if not has_margin:
+            return ("different", "differs"), ("not_shown", "no difference shown")
         return (
             ("matters", "beyond the margin"),
             ("different", "differs, margin open"),

@@ -36,9 +36,10 @@ class PageWords(FigureWords):
 
     def group_list(self, labels: tuple[str, ...]) -> str:
         """Return the groups, or how many where they are many."""
-        if len(labels) <= 6:
-            return ", ".join(labels)
-        return f"{', '.join(labels[:3])} … {labels[-1]} ({len(labels)} {self.group_plural})"
+        whole = ", ".join(labels)
+        if len(labels) <= 6 and len(whole) <= 160:
+            return whole
+        return f"{len(labels)} {self.group_plural}"
 
     def place_of_work(self, place: str) -> str:
         """Return where the work was done."""
@@ -82,6 +83,7 @@ class PageWords(FigureWords):
     def rule(self, procedure: str, reason: str) -> str:
         """Return the rule in words."""
         reason = reason.strip().rstrip(".")
+        procedure = f"{procedure[:1].upper()}{procedure[1:]}"
         return f"{procedure}: {reason[:1].lower()}{reason[1:]}." if reason else f"{procedure}."
 
     def rate_and_unit(self, alpha: str, unit: str, *, export_wide: bool) -> str:

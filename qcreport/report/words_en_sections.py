@@ -17,7 +17,7 @@ PROCEDURE_NAMES: dict[str, str] = {
     "steel_dwass": "Steel–Dwass–Critchlow–Fligner, on ranks",
     "steel": "Steel’s comparison of each with the reference, on ranks",
     "nested": "the nested comparison through its proper error term",
-    "none": "none",
+    "none": "no comparison",
 }
 CHECK_NAMES: dict[str, str] = {
     "brown_forsythe": "Median-centred Levene (Brown and Forsythe)",
@@ -146,13 +146,15 @@ class SectionWords(FigureWords):
 
     def why_intro(self, procedure: str, table: str, row: str) -> str:
         """Return which rule chose."""
+        procedure = f"{procedure[:1].upper()}{procedure[1:]}"
         if table == "plan" or row == "fixed_by_plan":
             return f"{procedure}, fixed in the plan before the comparison was made."
         return f"{procedure}, chosen by row “{row}” of the rules table “{table}”, read from top to bottom."
 
     def rule_reason(self, reason: str, source: str) -> str:
         """Return the row's reason and what it rests on."""
-        text = reason.strip().rstrip(".") + "."
+        reason = reason.strip().rstrip(".")
+        text = f"{reason[:1].upper()}{reason[1:]}."
         return f"{text} Rests on: {source.strip().rstrip('.')}." if source.strip() else text
 
     def not_a_gate(self) -> str:

@@ -58,6 +58,13 @@ VISCOSITY: dict[str, list[float]] = {
     "LC-2404": [4140, 4100, 4180, 4120],
     "LD-2404": [4150, 4090, 4160, 4130],
 }
+VISCOSITY_AS: dict[str, object] = {
+    "name": "viscosity",
+    "title": "Viscosity",
+    "unit": "mPa·s",
+    "decimals": 0,
+    "margin": (-100.0, 100.0),
+}
 DIGEST = "9f86d081884c7d659a2feaa0c55ad015a3bf4f1b2b0b822cd15d6c15b0f00a08"
 Margin = tuple[float | None, float | None]
 

@@ -150,6 +150,7 @@ class Pipeline:
             layout_bytes=settings.layout_file.data,
             layout_file=settings.layout_file.name,
             limits=self._site.limits,
+            second_look=self._site.intake.second_look,
         )
         require_answerable(measurements, settings.plan)
         reading = Reading(

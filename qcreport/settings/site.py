@@ -59,6 +59,8 @@ class IntakeSettings:
     """Seconds without a change before a file is taken."""
     poll_s: float
     """Seconds between two listings of the inbox."""
+    second_look: bool
+    """Every export is compared, cell by cell, with what an independent reader finds."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -154,7 +156,9 @@ def parse_site(data: bytes, file: str, root: Path) -> Site:
         demonstration=demonstration,
         folders=_folders(top.table("folders"), root),
         intake=IntakeSettings(
-            quiet_s=intake.number("quiet_s", 5.0, minimum=0.0), poll_s=intake.number("poll_s", 3.0, above=0.0)
+            quiet_s=intake.number("quiet_s", 5.0, minimum=0.0),
+            poll_s=intake.number("poll_s", 3.0, above=0.0),
+            second_look=bool(intake.flag("second_look", True)),
         ),
         limits=parse_limits(top.table("limits")),
         seal=_seal(top.table("seal"), root),
@@ -204,13 +208,18 @@ def require_folders(site: Site) -> None:
     """
     for folder in site.folders.all():
         try:
-            if not folder.is_dir() and folder.is_relative_to(site.root):
+            if not folder.exists() and folder.is_relative_to(site.root):
                 folder.mkdir(parents=True)
         except OSError as error:
             raise EnvironmentFailedError(
                 f"cannot make {folder}: {error.strerror}. Give this account the right to write there.",
                 file=str(folder),
             ) from None
+        if folder.exists() and not folder.is_dir():
+            raise EnvironmentFailedError(
+                f"{folder} is a file and not a folder. Move it away, or correct [folders] in {SITE_FILE}.",
+                file=str(folder),
+            )
         if not folder.is_dir():
             raise EnvironmentFailedError(
                 f"{folder} is not there. Mount the share or correct [folders] in {SITE_FILE}.",

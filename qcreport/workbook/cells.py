@@ -96,6 +96,8 @@ class Sheet:
     """Merged areas."""
     comments: frozenset[tuple[int, int]] = frozenset()
     """(row, column) of cells with a comment."""
+    extent: tuple[int, int] = (0, 0)
+    """Rows and columns of the range of all cells that are there, also those with an empty text."""
 
     def cell(self, row: int, column: int) -> Cell | None:
         """Return a cell, or None where it is empty or blank."""

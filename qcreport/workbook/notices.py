@@ -36,7 +36,7 @@ SENTENCES: Final = {
     "formula_results_used": "the saved results of {n} formulas were used",
     "macros_ignored": "the workbook holds macros; they were not run",
     "external_links_not_followed": "the workbook refers to others; saved results were used",
-    "limited_checks": "hidden rows, marks, number formats and formulas cannot be seen in this format",
+    "limited_checks": "not everything could be checked",
 }
 """Notice code → sentence; `{n}` is the number of cells."""
 

@@ -90,6 +90,7 @@ class _Workbook:
             filters=(*scan.filters, *table_filters),
             merges=tuple(scan.merges),
             comments=frozenset(comments),
+            extent=scan.extent(),
         )
 
     def _count(self, sheet: str, rows: int, cells: int) -> None:

@@ -23,7 +23,13 @@ _MODULE = "qcreport.workbook.reader_child"
 
 
 def read_in_child(
-    data: bytes, *, name: str, layout_bytes: bytes, layout_file: str, limits: Limits | None = None
+    data: bytes,
+    *,
+    name: str,
+    layout_bytes: bytes,
+    layout_file: str,
+    limits: Limits | None = None,
+    second_look: bool = False,
 ) -> MeasurementSet:
     """Return all that an export holds, read by a bounded child process.
 
@@ -39,6 +45,8 @@ def read_in_child(
         The layout file's name, for its faults.
     limits : Limits or None
         Bounds of the reading; the shipped ones where None.
+    second_look : bool
+        Compare what was read, cell by cell, with an independent reader.
 
     Returns
     -------
@@ -61,6 +69,7 @@ def read_in_child(
             "layout_file": layout_file,
             "layout_text": layout_bytes.decode("utf-8-sig"),
             "limits": limits_as_json(limits),
+            "second_look": second_look,
         }
         request = json.dumps(header).encode("ascii") + b"\n"
         return _ask(request, data, Decoder(name=name, sha256=sha256_hex(data), limits=limits), limits)

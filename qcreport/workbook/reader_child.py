@@ -49,7 +49,13 @@ def read(header: dict[str, Any], data: bytes) -> Iterable[bytes]:
     limits = Limits(**header["limits"])
     try:
         layout = parse_layout(header["layout_text"].encode("utf-8"), header["layout_file"])
-        result = read_export(data, name=header["name"], layout=layout, limits=limits)
+        result = read_export(
+            data,
+            name=header["name"],
+            layout=layout,
+            limits=limits,
+            second_look=header["second_look"] is True,
+        )
         return list(encode(result))
     except ExportRefusedError as refusal:
         return [encode_refusal(refusal)]

@@ -24,8 +24,13 @@ from qcreport.workbook.stated_units import Stated, stated_in_table
 from qcreport.workbook.stray import WalkedTable, note_stray_cells
 from qcreport.workbook.walk import TableWalk
 
+_Walked = list[tuple[Sheet, list[WalkedTable]]]
+_UNSEEN = "hidden rows, marks, number formats and formulas cannot be seen in this format"
 
-def read_export(data: bytes, *, name: str, layout: Layout, limits: Limits | None = None) -> MeasurementSet:
+
+def read_export(
+    data: bytes, *, name: str, layout: Layout, limits: Limits | None = None, second_look: bool = False
+) -> MeasurementSet:
     """Return all that an export holds, as its layout says.
 
     Parameters
@@ -38,6 +43,8 @@ def read_export(data: bytes, *, name: str, layout: Layout, limits: Limits | None
         How it is laid out.
     limits : Limits or None
         Bounds of the reading; the shipped ones where None.
+    second_look : bool
+        Compare what was read, cell by cell, with an independent reader.
 
     Returns
     -------
@@ -53,8 +60,10 @@ def read_export(data: bytes, *, name: str, layout: Layout, limits: Limits | None
     try:
         notices = NoticeBook(name)
         book = open_export(data, name=name, text=layout.text, limits=limits)
-        measurements = _read_book(book, name, layout, limits, notices)
+        measurements, walked = _read_book(book, name, layout, limits, notices)
         book.check_rest()
+        if second_look:
+            _look_again(data, book, walked, layout, notices)
     except ExportRefusedError as refusal:
         refusal.file = name
         raise
@@ -69,7 +78,7 @@ def read_export(data: bytes, *, name: str, layout: Layout, limits: Limits | None
 
 def _read_book(
     book: Book, name: str, layout: Layout, limits: Limits, notices: NoticeBook
-) -> tuple[Measurement, ...]:
+) -> tuple[tuple[Measurement, ...], _Walked]:
     _note_book(book, notices)
     try:
         export = _Export(book, name, layout, notices)
@@ -87,7 +96,13 @@ def _read_book(
     groups = frozenset(measurement.batch.casefold() for measurement in measurements)
     for sheet, tables in export.walked:
         note_stray_cells(sheet, tables, groups, notices)
-    return measurements
+    return measurements, export.walked
+
+
+def _look_again(data: bytes, book: Book, walked: _Walked, layout: Layout, notices: NoticeBook) -> None:
+    from qcreport.workbook.second_look import take_second_look
+
+    take_second_look(data, book, walked, layout.text, notices)
 
 
 def _refuse_if_empty(book: Book) -> None:
@@ -102,7 +117,7 @@ def _note_book(book: Book, notices: NoticeBook) -> None:
     if book.has_external_links:
         notices.add("external_links_not_followed")
     if book.limited:
-        notices.add("limited_checks")
+        notices.add("limited_checks", detail=_UNSEEN)
     if book.date_1904:
         notices.add("date_system_1904")
 
@@ -115,7 +130,7 @@ class _Export:
         self.readings: list[Reading] = []
         self.stated: dict[str, list[Stated]] = {}
         self.sample_columns: dict[int, int] = {}
-        self.walked: list[tuple[Sheet, list[WalkedTable]]] = []
+        self.walked: _Walked = []
 
     def read_sheet(self, sheet: Sheet) -> None:
         """Walk down all tables of one sheet."""

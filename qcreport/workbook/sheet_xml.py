@@ -35,7 +35,7 @@ class SheetScan:
     """
 
     __slots__ = (
-        "_cells", "_column", "_columns", "_count", "_filter", "_formula", "_has_value", "_in_cell",
+        "_cells", "_column", "_columns", "_count", "_empty", "_filter", "_formula", "_has_value", "_in_cell",
         "_in_data", "_inline", "_n_styles", "_pieces", "_reading", "_row", "_row_text", "_shared_cells",
         "_strings", "_style", "_styles", "_type", "filters", "hidden_columns", "hidden_rows", "merges",
         "rows",
@@ -60,6 +60,7 @@ class SheetScan:
         self._pieces: list[str] = []
         self._inline: TextCollector | None = None
         self._filter: Area | None = None
+        self._empty: Area | None = None
 
     def start(self, name: str, attributes: Attributes) -> None:
         """Take note of the start of an element."""
@@ -161,12 +162,15 @@ class SheetScan:
             self._reading = False
         elif tag == "c":
             cell = self._finished_cell()
+            holds = self._has_value or self._inline is not None
             self._in_cell = False
             self._inline = None
             if cell is not None:
                 if self._column in self._cells:
                     raise damaged(f"Row {self._row} holds one cell twice.")
                 self._cells[self._column] = cell
+            elif holds:
+                self._note_empty()
         elif self._inline is not None:
             self._inline.end(tag)
         elif tag == "row" and self._in_data:
@@ -177,6 +181,26 @@ class SheetScan:
         elif tag == "sheetData":
             self._in_data = False
             self._row = 0
+
+    def _note_empty(self) -> None:
+        """Widen the range of cells that are there and hold an empty text."""
+        row, column = self._row, self._column
+        old = self._empty if self._empty is not None else Area(row, column, row, column)
+        self._empty = Area(
+            min(old.first_row, row), min(old.first_column, column), max(old.last_row, row),
+            max(old.last_column, column),
+        )  # fmt: skip
+
+    def extent(self) -> tuple[int, int]:
+        """Return the rows and columns of the range that holds all cells, those with an empty text too."""
+        rows = set(self.rows)
+        columns = {column for cells in self.rows.values() for column in cells}
+        if (empty := self._empty) is not None:
+            rows.update((empty.first_row, empty.last_row))
+            columns.update((empty.first_column, empty.last_column))
+        if not rows:
+            return 0, 0
+        return max(rows) - min(rows) + 1, max(columns) - min(columns) + 1
 
     def _finished_cell(self) -> Cell | None:
         if self._inline is not None:

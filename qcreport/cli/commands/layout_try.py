@@ -25,12 +25,17 @@ def run(arguments: argparse.Namespace) -> int:
     path = Path(arguments.export)
     if ignored_name(path.name):
         return _ignored(path.name, arguments.json)
-    layout, limits = _layout(arguments, path.name)
+    layout, limits, second_look = _layout(arguments, path.name)
     parse_layout(layout.data, layout.name)  # faults of the layout are the settings' and end with code 2
     data = read_bytes(path, "the export") if path.exists() else _absent(path)
     try:
         measurements = read_in_child(
-            data, name=path.name, layout_bytes=layout.data, layout_file=layout.name, limits=limits
+            data,
+            name=path.name,
+            layout_bytes=layout.data,
+            layout_file=layout.name,
+            limits=limits,
+            second_look=second_look,
         )
     except ExportRefusedError as error:
         if arguments.json:
@@ -57,19 +62,20 @@ def _absent(path: Path) -> bytes:
     raise UsageError(f"{path} is not there. Name an export.", file=str(path))
 
 
-def _layout(arguments: argparse.Namespace, export_name: str) -> tuple[SettingsFile, Limits]:
-    """Return the layout that was named, else that of the one plan whose patterns fit the export's name."""
+def _layout(arguments: argparse.Namespace, export_name: str) -> tuple[SettingsFile, Limits, bool]:
+    """Return the layout that was named, or the one of the plan that fits, with the way of reading."""
     if arguments.layout is not None and Path(arguments.layout).is_file():
         path = Path(arguments.layout)
-        return SettingsFile(name=path.name, data=read_bytes(path, "the layout")), Limits()
+        return SettingsFile(name=path.name, data=read_bytes(path, "the layout")), Limits(), True
     site = load_site(Path(arguments.site))
     if arguments.layout is not None:
         path = site.root / "config" / "layouts" / f"{arguments.layout}.toml"
         if not path.is_file():
             raise ConfigError((Fault(text=f"there is no layout {arguments.layout!r}", file=str(path)),))
-        return SettingsFile(name=path.name, data=read_bytes(path, "the layout")), site.limits
+        file = SettingsFile(name=path.name, data=read_bytes(path, "the layout"))
+        return file, site.limits, site.intake.second_look
     plans = fitting_plans(export_name, load_plans(site))
-    return plans[0].layout_file, site.limits
+    return plans[0].layout_file, site.limits, site.intake.second_look
 
 
 def _table(measurements: MeasurementSet) -> list[str]:

@@ -91,6 +91,8 @@ def _why_not(group: Group, plan: ComparisonPlan) -> str:
     if group.n < plan.smallest_group:
         had = "no value" if group.n == 0 else f"{group.n} of them" if group.n > 1 else "one"
         return f"The plan asks for at least {plan.smallest_group} {unit} in a group; this one has {had}."
+    if not all(u.placed for u in group.units):
+        return "It holds a mean of readings with limits on both sides, or of numbers and not detected ones."
     if 2 * group.censored > group.n:
         return f"{group.censored} of its {group.n} results, more than half, are known only by a limit."
     if plan.scale is Scale.LOG and any(u.censored is None and u.value <= 0.0 for u in group.units):

@@ -53,6 +53,8 @@ class UnitValue:
     """None for a plain number."""
     marks: tuple[str, ...]
     """Marks of its cells: struck, commented, hidden."""
+    placed: bool = True
+    """False for a mean of readings that has no place among the others, not even by rank."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -9,7 +9,7 @@ from typing import TypeVar
 
 from qcreport.analysis.result import UnitValue
 from qcreport.errors import ExportRefusedError
-from qcreport.measurements import Censoring, Measurement, MeasurementSet
+from qcreport.measurements import LIMITS_BELOW, Censoring, Measurement, MeasurementSet
 from qcreport.plan.model import CharacteristicPlan, ComparisonPlan, Groups, Unit
 
 _Key = tuple[str, ...]
@@ -149,20 +149,40 @@ def _mean_of(values: list[UnitValue]) -> UnitValue:
     """Return the mean of readings; censored as soon as one of them is (the mean is then no number)."""
     if len(values) == 1:
         return values[0]
-    limits = {v.censored for v in values if v.censored is not None}
+    censored, placed = _joint({v.censored for v in values})
     return UnitValue(
-        value=math.fsum(v.value for v in values) / len(values),
+        value=_mean_or_limit(values),
         text="",
         decimals=max(v.decimals for v in values),
         sample=values[0].sample if len({v.sample for v in values}) == 1 else None,
         cells=tuple(cell for v in values for cell in v.cells),
-        censored=_joint(limits),
+        censored=censored,
+        placed=placed and all(v.placed for v in values),
         marks=tuple(dict.fromkeys(mark for v in values for mark in v.marks)),
     )
 
 
-def _joint(limits: set[Censoring]) -> Censoring | None:
-    """Return the censoring of a mean: that of its readings where they agree, else `nd` (no side known)."""
+def _mean_or_limit(values: list[UnitValue]) -> float:
+    """Return the mean; a reading that was not detected beside limits counts as below the highest of them."""
+    limits = [v.value for v in values if v.censored is not Censoring.NOT_DETECTED]
+    if len(limits) < len(values) and limits and all(v.censored for v in values):
+        return max(limits)
+    return math.fsum(v.value for v in values) / len(values)
+
+
+def _joint(readings: set[Censoring | None]) -> tuple[Censoring | None, bool]:
+    """Return the censoring of a mean, and whether the mean has a place among the others.
+
+    With limits of one side the mean lies on that side of the mean of limits and numbers. A mean of a number
+    and a reading that was not detected, or of limits on both sides, may lie anywhere between others.
+    """
+    limits = readings - {None}
     if not limits:
-        return None
-    return limits.pop() if len(limits) == 1 else Censoring.NOT_DETECTED
+        return None, True
+    if readings == {Censoring.NOT_DETECTED}:
+        return Censoring.NOT_DETECTED, True
+    if limits <= LIMITS_BELOW and (Censoring.NOT_DETECTED not in limits or None not in readings):
+        return (Censoring.AT_MOST if limits == {Censoring.AT_MOST} else Censoring.BELOW), True
+    if limits <= {Censoring.ABOVE, Censoring.AT_LEAST}:
+        return (Censoring.ABOVE if Censoring.ABOVE in limits else Censoring.AT_LEAST), True
+    return Censoring.NOT_DETECTED, False

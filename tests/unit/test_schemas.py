@@ -256,7 +256,7 @@ def test_keys_stand_in_the_order_of_the_contract() -> None:
         lambda d: d["characteristics"][0]["overall"].update(name="F"),
         lambda d: d["characteristics"][0]["pairs"][0].update(p=1.5),
         lambda d: d["characteristics"][0]["pairs"][0].update(p=None),
-        lambda d: d["characteristics"][0]["pairs"][0].update(difference=None),
+        lambda d: d["characteristics"][0]["pairs"][0].update(difference="1.0"),
         lambda d: d["characteristics"][0]["pairs"][0].update(df=0),
         lambda d: d["characteristics"][0]["pairs"][0].update(lower="-inf"),
         lambda d: d["characteristics"][0]["pairs"][0].update(answer="better"),
@@ -272,16 +272,14 @@ def test_a_spoiled_result_does_not_conform(spoil: Spoil) -> None:
     assert not validator("result").is_valid(document)
 
 
-def paths(document: Json, before: tuple[str, ...] = ()) -> list[tuple[str, ...]]:
-    found = []
-    for key, value in document.items():
-        found.append((*before, key))
-        if isinstance(value, dict) and key != "templates":
-            found.extend(paths(value, (*before, key)))
-    return found
+CONTEXT_KEYS = """schema report report.number report.revision report.made_at report.time_zone report.language
+report.page_size laboratory laboratory.name laboratory.address laboratory.place_of_work laboratory.customer
+export export.name export.sha256 export.received_at plan plan.name plan.sha256 layout layout.sha256 rules
+rules.sha256 templates templates_changed run run.k run.n run.reason ledger_head ledger_head.sequence
+ledger_head.hash seal seal.subject seal.fingerprint_sha256 seal.pades_level demonstration software_version"""
 
 
-@pytest.mark.parametrize("path", [p for p in paths(CONTEXT.to_json()) if p != ("history",)], ids=".".join)
+@pytest.mark.parametrize("path", [tuple(text.split(".")) for text in CONTEXT_KEYS.split()], ids=".".join)
 def test_a_context_that_lacks_a_key_does_not_conform(path: tuple[str, ...]) -> None:
     document = copy.deepcopy(CONTEXT.to_json())
     del at(document, path[:-1])[path[-1]]

@@ -248,11 +248,38 @@ class TestCensored:
         assert only(self.GROUPS).flagged == ()
         assert only(self.GROUPS).analysis_of_variance is None
 
-    def test_a_mean_with_a_censored_reading_is_censored(self) -> None:
-        cells = [(5.0, "S1"), ("<1", "S1"), ("nd", "S2"), ("<1", "S2"), (5.2, "S3"), (5.4, "S3")]
-        data = export(measurement(v, batch="A", row=r, sample=s) for r, (v, s) in enumerate(cells, start=2))
-        units = only(data).groups[0].units
-        assert [u.censored for u in units] == ["<", "nd", None]
+    @pytest.mark.parametrize(
+        ("readings", "censored", "value"),
+        [
+            ((5.0, "<1"), "<", 3.0),
+            (("<1", "<=3"), "<", 2.0),
+            (("<=1", 2.0), "<=", 1.5),
+            ((">9", ">=7"), ">", 8.0),
+            ((5.0, 5.4), None, 5.2),
+            (("nd", "nd"), "nd", 0.0),
+            (("nd", "<1", "<3"), "<", 3.0),
+        ],
+    )
+    def test_a_mean_with_limits_of_one_side_lies_on_that_side(
+        self, readings: tuple[float | str, ...], censored: str | None, value: float
+    ) -> None:
+        data = export(measurement(v, batch="A", row=r, sample="S") for r, v in enumerate(readings, start=2))
+        (unit,) = only(data).groups[0].units
+        assert (unit.censored, unit.placed) == (censored, True)
+        assert unit.value == pytest.approx(value, abs=1e-12)
+
+    @pytest.mark.parametrize("readings", [(5.0, "nd"), ("nd", ">9"), ("<1", ">9"), ("<1", ">9", 5.0)])
+    def test_a_mean_that_may_lie_anywhere_is_not_ranked(self, readings: tuple[float | str, ...]) -> None:
+        """The mean of 5 and a reading not detected is at least 2.5: it must not count as the lowest."""
+        cells = [("A", str(i), v) for i, v in enumerate([*A, *A])] + [("A", "S", v) for v in readings]
+        cells += [("B", str(i), v) for i, v in enumerate(B)] + [("C", str(i), v) for i, v in enumerate(C)]
+        data = export(measurement(v, batch=b, row=r, sample=s) for r, (b, s, v) in enumerate(cells, start=2))
+        result = only(data)
+        assert [g.label for g in result.not_compared] == ["A"]
+        assert result.not_compared[0].reason.startswith(
+            "It holds a mean of readings with limits on both sides"
+        )
+        assert [(p.first, p.second) for p in result.pairs] == [("B", "C")]
 
     def test_a_censored_group_left_out_does_not_hinder_the_others(self) -> None:
         result = only({"A": A, "B": B, "C": [5.0, "<0.5"]}, plan(comparison='procedure = "games_howell"'))

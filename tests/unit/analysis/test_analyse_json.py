@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import importlib.resources
 import json
 import subprocess
 import sys
 from pathlib import Path
 from typing import Any
 
+import jsonschema
 import numpy
 import pytest
 import scipy
@@ -36,7 +38,7 @@ def test_what_the_context_says_is_in_it() -> None:
     assert found["schema"] == "qcreport/result/1"
     assert found["export"] == {"name": CONTEXT.export_name, "sha256": CONTEXT.export_sha256}
     assert found["plan"] == {"name": "made-by-hand", "sha256": CONTEXT.plan_sha256}
-    assert found["run"] == {"k": 2, "n": 2}
+    assert (found["run"]["k"], found["run"]["n"]) == (2, 2)
     assert found["versions"] == {
         "numpy": numpy.__version__,
         "qcreport": qcreport.__version__,
@@ -66,6 +68,23 @@ def test_what_is_undefined_is_null() -> None:
     assert [p["df"] for p in found["pairs"]] == [None] * 3  # the chosen procedure has none of its own
     assert (found["critical_value"], found["hsd"]) == (None, None)
     assert found["groups"][3]["sd"] is None
+
+
+@pytest.mark.parametrize("margin", ["", MARGIN])
+def test_ranks_of_limits_are_a_document_too(margin: str) -> None:
+    groups = {"A": [5.1, 5.4, "<0.5", 5.0], "B": [6.0, 6.4, 5.9, 6.2], "C": ["<0.5", "<0.5", 5.2, 5.3]}
+    result = run(groups, plan(characteristic=margin))
+    found = json.loads(to_readable_json_bytes(result.to_json()))
+    text = (importlib.resources.files("qcreport") / "schemas" / "result.schema.json").read_text("utf-8")
+    jsonschema.Draft202012Validator(json.loads(text)).validate(found)
+    (characteristic,) = found["characteristics"]
+    assert characteristic["procedure"] == "steel_dwass"
+    assert characteristic["overall"]["name"] == "kruskal_wallis"
+    assert [p["lower"] for p in characteristic["pairs"]] == [None] * 3
+    assert [p["upper"] for p in characteristic["pairs"]] == [None] * 3
+    assert {p["answer"] for p in characteristic["pairs"]} == {"not_settled" if margin else "not_shown"}
+    assert [g["mean"] for g in characteristic["groups"]] == [None, 6.125, None]
+    assert "censored_values_tied" in [n["code"] for n in found["notices"]]
 
 
 def test_a_common_critical_value_and_hsd_are_written() -> None:

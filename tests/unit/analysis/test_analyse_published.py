@@ -133,6 +133,23 @@ def test_two_one_sided_tests(name: str) -> None:
         assert result.all_within_margin is expected
 
 
+@pytest.mark.parametrize("name", DATA)
+def test_ranks(name: str) -> None:
+    """Asymptotic law: these sizes have too many arrangements to count."""
+    result = fixed(name, "steel_dwass")
+    for row in rows_of(name, "dscf"):
+        pair = pair_of(result, str(row["g1"]), str(row["g2"]))
+        assert pair.statistic == pytest.approx(-row["Z"], rel=1e-12)
+        assert pair.p == pytest.approx(row["p"], rel=TIGHT)
+        assert (pair.se, pair.df, pair.detectable) == (None, None, None)
+    printed = reference_data(name)["results_R"]["kruskal"]
+    assert result.overall is not None
+    assert result.overall.name == "kruskal_wallis"
+    assert result.overall.statistic == pytest.approx(printed["H"], rel=1e-12)
+    assert result.overall.df == (printed["df"],)
+    assert result.overall.p == pytest.approx(printed["p"], rel=1e-12)
+
+
 RULES_CHOICE = {
     "PlantGrowth": ("unequal_spread", "games_howell"),  # three groups of ten
     "InsectSprays": ("unequal_spread", "games_howell"),

@@ -11,7 +11,10 @@ import scipy
 import qcreport
 from qcreport.analysis.characteristic import characteristic_result
 from qcreport.analysis.context import Context
+from qcreport.analysis.left_out import without_cells
 from qcreport.analysis.outcome import Question
+from qcreport.analysis.provenance import NO_PROVENANCE
+from qcreport.analysis.provenance_notices import provenance_notices
 from qcreport.analysis.result import Result
 from qcreport.analysis.screen import groups_of
 from qcreport.errors import ExportRefusedError
@@ -49,22 +52,30 @@ def analyse(
     ExportRefusedError
         `reference_missing`, `unit_conflict`, `group_missing`, `no_data_rows`.
     """
-    require_answerable(measurements, plan)
+    records = context.provenance
+    left_out = left_out_cells(context)
+    require_answerable(without_cells(measurements, left_out), plan)
     alpha = plan.alpha
     if plan.family is Family.EXPORT:
         alpha /= len(plan.characteristics)
     earliest = earliest_date(measurements)
     results, notices = [], list(measurements.notices)
     for characteristic in plan.characteristics:
-        groups = groups_of(measurements, plan, characteristic)
         question = Question(
-            plan=plan, characteristic=characteristic, rules=rules, alpha=alpha, earliest=earliest
+            plan=plan,
+            characteristic=characteristic,
+            rules=rules,
+            alpha=alpha,
+            earliest=earliest,
+            left_out=left_out,
         )
-        result, added = characteristic_result(groups, question)
+        result, added = characteristic_result(measurements, question)
         results.append(result)
         notices.extend(added)
     notices.extend(_late_approval(plan, earliest))
     notices.extend(_unused_directions(plan))
+    if records is not None:
+        notices.extend(provenance_notices(records, context, results, earliest))
     return Result(
         export_name=context.export_name,
         export_sha256=context.export_sha256,
@@ -75,7 +86,15 @@ def analyse(
         notices=tuple(notices),
         characteristics=tuple(results),
         versions=VERSIONS,
+        run_reason=context.run_reason,
+        provenance=NO_PROVENANCE if records is None else records,
     )
+
+
+def left_out_cells(context: Context) -> frozenset[str]:
+    """Return the cells that a person left out."""
+    records = context.provenance
+    return frozenset() if records is None or records.left_out is None else frozenset(records.left_out.cells)
 
 
 def require_answerable(measurements: MeasurementSet, plan: ComparisonPlan) -> None:

@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-
 from qcreport.analysis.comparable import Comparable
+from qcreport.analysis.description import letters, normality, overall_effect, pair_effects
 from qcreport.analysis.flags import flag
+from qcreport.analysis.left_out import groups_without, units_left_out, with_left_out
 from qcreport.analysis.outcome import Outcome, Question, decide, sensitivity
 from qcreport.analysis.ranks import overall_by_ranks
 from qcreport.analysis.result import (
@@ -13,25 +13,25 @@ from qcreport.analysis.result import (
     GroupResult,
     NotCompared,
     Overall,
+    UnitValue,
 )
 from qcreport.analysis.screen import Group
 from qcreport.errors import StatisticsError
-from qcreport.measurements import Notice
+from qcreport.measurements import MeasurementSet, Notice
 from qcreport.plan.model import POOLED, RANKS
 from qcreport.rules.facts import SIMILAR
-from qcreport.stats.equivalence import most_serious
 from qcreport.stats.one_way import AnovaResult, anova, supported_digits, welch
 from qcreport.stats.summary import GroupSummary, summarize
 
-NOT_COMPARED = "not_compared"
-
 
 def characteristic_result(
-    groups: Sequence[Group], question: Question
+    measurements: MeasurementSet, question: Question
 ) -> tuple[CharacteristicResult, tuple[Notice, ...]]:
     """Return the result of one characteristic and the notices its computation adds."""
+    groups = groups_without(measurements, question.plan, question.characteristic, question.left_out)
     outcome = decide(groups, question)
     comparison, c = outcome.comparison, question.characteristic
+    pairs = () if comparison is None else comparison.pairs
     table = _variance_table(outcome.ready)
     result = CharacteristicResult(
         name=c.name,
@@ -45,9 +45,11 @@ def characteristic_result(
         upper_limit=c.upper_limit,
         independent_unit=question.plan.independent_unit.value,
         reference=question.plan.reference,
-        groups=tuple(_group_result(g) for g in groups if g.n > 0),
+        groups=tuple(
+            _group_result(g, units_left_out(measurements, question, g.label)) for g in groups if g.n > 0
+        ),
         not_compared=_not_compared(outcome),
-        checks=outcome.gathered.checks,
+        checks=(*outcome.gathered.checks, *normality(outcome.ready)),
         facts=outcome.gathered.evidence,
         rule=outcome.choice.rule,
         trace=outcome.choice.trace,
@@ -57,20 +59,17 @@ def characteristic_result(
         critical_value=None if comparison is None else comparison.posthoc.critical_value,
         hsd=None if comparison is None else comparison.posthoc.hsd,
         all_within_margin=_all_within(outcome),
-        pairs=() if comparison is None else comparison.pairs,
+        pairs=pairs,
         sensitivity=sensitivity(outcome, question),
+        law=None if comparison is None else comparison.posthoc.law,
+        letters=letters(outcome.ready, pairs, outcome.procedure),
+        pair_effects=pair_effects(outcome.ready, pairs, outcome.procedure),
+        overall_effect=overall_effect(outcome.ready),
         flagged=flag(groups, outcome, question),
-        answer=_answer(outcome),
+        answer=outcome.answer,
+        left_out=with_left_out(outcome, measurements, question),
     )
     return result, () if comparison is None else comparison.notices
-
-
-def _answer(outcome: Outcome) -> str:
-    """Return the most serious pair's answer; what was left uncompared keeps anything from being cleared."""
-    if outcome.comparison is None or not outcome.comparison.pairs:
-        return NOT_COMPARED
-    left_out = [NOT_COMPARED] if outcome.ready.not_compared else []
-    return most_serious([*(p.answer for p in outcome.comparison.pairs), *left_out])
 
 
 def _all_within(outcome: Outcome) -> bool | None:
@@ -88,7 +87,7 @@ def _not_compared(outcome: Outcome) -> tuple[NotCompared, ...]:
     return (*outcome.ready.not_compared, *rest)
 
 
-def _group_result(group: Group) -> GroupResult:
+def _group_result(group: Group, left_out: tuple[UnitValue, ...]) -> GroupResult:
     summary = _described(group)
     return GroupResult(
         label=group.label,
@@ -102,7 +101,7 @@ def _group_result(group: Group) -> GroupResult:
         censored=group.censored,
         missing=group.missing,
         cells=tuple(cell for u in group.units for cell in u.cells),
-        units=group.units,
+        units=(*group.units, *left_out),
     )
 
 

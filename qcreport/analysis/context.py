@@ -9,6 +9,8 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
 
+from qcreport.analysis.provenance import Provenance, provenance_from_json
+
 CONTEXT_SCHEMA = "qcreport/context/1"
 
 
@@ -82,6 +84,8 @@ class Context:
     """True for a demo site: key and report say so."""
     software_version: str
     """qcreport version."""
+    provenance: Provenance | None = None
+    """What the records add; None where there are none (and in reports of versions before)."""
 
     def to_json(self) -> dict[str, Any]:
         """Return the document `qcreport/context/1`."""
@@ -114,6 +118,7 @@ class Context:
             "run": {"k": self.run_k, "n": self.run_n, "reason": self.run_reason},
             "ledger_head": {"sequence": self.ledger_sequence, "hash": self.ledger_hash},
             "history": None,
+            "records": None if self.provenance is None else self.provenance.to_json(),
             "seal": {
                 "subject": self.seal_subject,
                 "fingerprint_sha256": self.seal_fingerprint_sha256,
@@ -137,6 +142,7 @@ def context_from_json(data: Mapping[str, Any]) -> Context:
     try:
         report, laboratory, export = data["report"], data["laboratory"], data["export"]
         run, head, seal = data["run"], data["ledger_head"], data["seal"]
+        records = data.get("records")
         return Context(
             report_number=str(report["number"]),
             revision=int(report["revision"]),
@@ -169,6 +175,7 @@ def context_from_json(data: Mapping[str, Any]) -> Context:
             pades_level=str(seal["pades_level"]),
             demonstration=bool(data["demonstration"]),
             software_version=str(data["software_version"]),
+            provenance=None if records is None else provenance_from_json(records),
         )
     except (KeyError, TypeError, AttributeError, OverflowError) as error:
         raise ValueError(f"context.json lacks or spoils {error}") from None

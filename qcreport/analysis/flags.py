@@ -6,12 +6,12 @@ import math
 from collections.abc import Sequence
 from dataclasses import replace
 
-from qcreport.analysis.comparable import without
+from qcreport.analysis.comparable import Comparable, without
 from qcreport.analysis.outcome import Outcome, Question, changed_answers, decide
 from qcreport.analysis.result import Flagged
 from qcreport.analysis.screen import Group
 from qcreport.plan.model import Scale
-from qcreport.stats.outliers import OutlierCheck, grubbs
+from qcreport.stats.outliers import SMALLEST_ESD_N, OutlierCheck, generalized_esd, grubbs
 from qcreport.stats.summary import summarize
 
 LEVEL = 0.05
@@ -19,11 +19,15 @@ LEVEL = 0.05
 
 
 def flag(groups: Sequence[Group], outcome: Outcome, question: Question) -> tuple[Flagged, ...]:
-    """Return the values that Grubbs' test flags at 0.05 shared over the groups, one a group at most."""
+    """Return the outlying values: Grubbs' test in small groups, generalized ESD from 15 results on.
+
+    Both at 0.05 shared over the groups. A large group may hold several, which hide each other from Grubbs'
+    test.
+    """
     ready = outcome.ready
     if ready.censored or not ready.groups:
         return ()
-    checks = grubbs([g.label for g in ready.groups], ready.values, alpha=LEVEL)
+    checks = _checks(ready)
     by_label = {g.label: g for g in ready.groups}
     found: list[Flagged] = []
     for check in checks:
@@ -42,6 +46,18 @@ def flag(groups: Sequence[Group], outcome: Outcome, question: Question) -> tuple
             )
         )
     return tuple(found)
+
+
+def _checks(ready: Comparable) -> list[OutlierCheck]:
+    labels = [g.label for g in ready.groups]
+    small = {c.label: (c,) for c in grubbs(labels, ready.values, alpha=LEVEL)}
+    found: list[OutlierCheck] = []
+    for label, values in zip(labels, ready.values, strict=True):
+        if len(values) >= SMALLEST_ESD_N:
+            found.extend(generalized_esd(label, values, alpha=LEVEL / len(labels)))
+        else:
+            found.extend(small.get(label, ()))
+    return found
 
 
 def _within_rounding(check: OutlierCheck, group: Group, scale: Scale) -> bool:

@@ -19,6 +19,9 @@ from qcreport.errors import StatisticsError
 from qcreport.plan.model import BY_RULES, POOLED, RANKS, CharacteristicPlan, ComparisonPlan
 from qcreport.rules import Choice, Facts, RulesTable, choose, fixed_by_plan
 from qcreport.rules.facts import CANNOT_BE_JUDGED, SIMILAR
+from qcreport.stats.equivalence import most_serious
+
+NOT_COMPARED = "not_compared"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -37,6 +40,8 @@ class Question:
     """Date of the earliest measurement."""
     beside: bool = False
     """True for what is asked beside the answer: only the answers are wanted, no planning of sizes."""
+    left_out: frozenset[str] = frozenset()
+    """Cells that a person left out."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -58,6 +63,14 @@ class Outcome:
     def procedure(self) -> str:
         """The procedure that ran, `none` where none did."""
         return self.choice.procedure if self.comparison is not None else "none"
+
+    @property
+    def answer(self) -> str:
+        """The most serious pair's answer; what was left uncompared keeps anything from being cleared."""
+        if self.comparison is None or not self.comparison.pairs:
+            return NOT_COMPARED
+        left_out = [NOT_COMPARED] if self.ready.not_compared else []
+        return most_serious([*(p.answer for p in self.comparison.pairs), *left_out])
 
 
 def decide(groups: Sequence[Group], question: Question) -> Outcome:

@@ -8,6 +8,8 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any
 
+from qcreport.analysis.left_out_result import LeftOutResult
+from qcreport.analysis.provenance import NO_PROVENANCE, Provenance
 from qcreport.canonical import finite_or_none
 from qcreport.measurements import Censoring, Notice
 from qcreport.rules.evidence import Check, FactEvidence, RuleApplied, TraceStep
@@ -154,6 +156,32 @@ class Overall:
             "ss_within": finite_or_none(self.ss_within),
             "ss_between": finite_or_none(self.ss_between),
             "supported_digits": self.supported_digits,
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class EffectSize:
+    """A dimensionless size of an effect; description only."""
+
+    name: str
+    """`hedges_g` (of a pair) or `omega_squared` (of all groups)."""
+    value: float
+    """Estimate."""
+    lower: float
+    """Lower confidence limit."""
+    upper: float
+    """Upper confidence limit."""
+    confidence: float
+    """Confidence of the two limits together; not simultaneous over pairs."""
+
+    def to_json(self) -> Json:
+        """Return the form of `result.json`."""
+        return {
+            "name": self.name,
+            "value": finite_or_none(self.value),
+            "lower": finite_or_none(self.lower),
+            "upper": finite_or_none(self.upper),
+            "confidence": self.confidence,
         }
 
 
@@ -324,10 +352,20 @@ class CharacteristicResult:
     """i < j in group order; with a reference each group with it."""
     sensitivity: Sensitivity | None
     """One alternative, or None."""
+    law: str | None = None
+    """For ranks `exact` or `asymptotic`; None otherwise."""
+    letters: tuple[str, ...] = ()
+    """Compact letters of the compared groups, group order; empty with a reference."""
+    pair_effects: tuple[EffectSize | None, ...] = ()
+    """Hedges' g of the pairs, pair order; empty where not given."""
+    overall_effect: EffectSize | None = None
+    """Omega squared; None where not given."""
     flagged: tuple[Flagged, ...]
     """Outlying values."""
     answer: str
     """Code of the most serious pair."""
+    left_out: LeftOutResult | None = None
+    """What a person left out, and the answers with it; None where nothing was."""
 
     def fact_values(self) -> dict[str, str | int]:
         """Return the facts as the decision table saw them."""
@@ -362,12 +400,23 @@ class CharacteristicResult:
             "critical_value": finite_or_none(self.critical_value),
             "hsd": finite_or_none(self.hsd),
             "all_within_margin": self.all_within_margin,
-            "pairs": [p.to_json() for p in self.pairs],
+            "pairs": self._pairs_json(),
+            "law": self.law,
+            "letters": list(self.letters),
+            "overall_effect": None if self.overall_effect is None else self.overall_effect.to_json(),
             "components": None,
             "sensitivity": None if self.sensitivity is None else self.sensitivity.to_json(),
             "flagged": [f.to_json() for f in self.flagged],
             "answer": self.answer,
+            "left_out": None if self.left_out is None else self.left_out.to_json(),
         }
+
+    def _pairs_json(self) -> list[Json]:
+        effects = self.pair_effects or (None,) * len(self.pairs)
+        return [
+            {**pair.to_json(), "effect": None if effect is None else effect.to_json()}
+            for pair, effect in zip(self.pairs, effects, strict=True)
+        ]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -392,6 +441,10 @@ class Result:
     """In plan order."""
     versions: tuple[tuple[str, str], ...]
     """(package, version) that computed it."""
+    run_reason: str = ""
+    """Why it was run again; empty for run 1."""
+    provenance: Provenance = NO_PROVENANCE
+    """What the records add."""
 
     def to_json(self) -> Json:
         """Return the document `qcreport/result/1`."""
@@ -399,7 +452,13 @@ class Result:
             "schema": RESULT_SCHEMA,
             "export": {"name": self.export_name, "sha256": self.export_sha256},
             "plan": {"name": self.plan_name, "sha256": self.plan_sha256},
-            "run": {"k": self.run_k, "n": self.run_n},
+            "run": {
+                "k": self.run_k,
+                "n": self.run_n,
+                "reason": self.run_reason,
+                **self.provenance.run_json(),
+            },
+            **self.provenance.decisions_json(),
             "notices": [{"code": n.code, "cells": list(n.cells), "text": n.text} for n in self.notices],
             "characteristics": [c.to_json() for c in self.characteristics],
             "versions": dict(self.versions),

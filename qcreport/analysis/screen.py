@@ -62,7 +62,7 @@ def groups_of(
     """
     mine = [m for m in measurements.measurements if m.characteristic == characteristic.name]
     _check_units(measurements, mine, characteristic)
-    by_label = _gathered((_label(measurements, m, plan.groups), m) for m in mine)
+    by_label = _gathered((group_label(measurements, m, plan.groups), m) for m in mine)
     return tuple(_group(label, members, plan.independent_unit) for label, members in by_label.items())
 
 
@@ -90,7 +90,14 @@ def _check_units(
             )
 
 
-def _label(measurements: MeasurementSet, m: Measurement, groups: Groups) -> str:
+def group_label(measurements: MeasurementSet, m: Measurement, groups: Groups) -> str:
+    """Return the label under which a measurement is compared.
+
+    Raises
+    ------
+    ExportRefusedError
+        `group_missing` where lines are compared and it has none.
+    """
     if groups is Groups.BATCH:
         return m.batch
     if m.line is None:
@@ -108,7 +115,7 @@ def _label(measurements: MeasurementSet, m: Measurement, groups: Groups) -> str:
 
 def _group(label: str, members: list[Measurement], unit: Unit) -> Group:
     present = [m for m in members if not m.missing]
-    readings = [(_unit_key(m, unit), _reading(m)) for m in present]
+    readings = [(_unit_key(m, unit), unit_value(m)) for m in present]
     if unit is not Unit.READING:
         readings = _averaged(readings)  # reading → sample
     if unit is Unit.BATCH:
@@ -128,7 +135,8 @@ def _unit_key(m: Measurement, unit: Unit) -> _Key:
     return (m.batch, m.sample, "sample")
 
 
-def _reading(m: Measurement) -> UnitValue:
+def unit_value(m: Measurement) -> UnitValue:
+    """Return one reading as a value of its own."""
     return UnitValue(
         value=0.0 if m.value is None else m.value,
         text=m.text,

@@ -118,7 +118,7 @@ class Context:
             "run": {"k": self.run_k, "n": self.run_n, "reason": self.run_reason},
             "ledger_head": {"sequence": self.ledger_sequence, "hash": self.ledger_hash},
             "history": None,
-            "records": None if self.provenance is None else self.provenance.to_json(),
+            **({} if self.provenance is None else {"records": self.provenance.to_json()}),
             "seal": {
                 "subject": self.seal_subject,
                 "fingerprint_sha256": self.seal_fingerprint_sha256,

@@ -9,12 +9,17 @@ from datetime import datetime
 from getpass import getpass
 from pathlib import Path
 
-from qcreport.errors import EnvironmentFailedError
+from qcreport.errors import EnvironmentFailedError, SigningDeniedError
 from qcreport.pipeline.workers import PASSPHRASE_VARIABLE
-from qcreport.settings.site import Site, no_key
+from qcreport.settings.site import SITE_FILE, Site, no_key
 from qcreport.signing.key_checks import check_key_file_mode
 from qcreport.signing.keys import SigningKey, load_signing_key
 from qcreport.signing.passphrase import find_passphrase
+
+_WHERE_FROM = (
+    f"A passphrase comes from [seal] passphrase_file in {SITE_FILE}, from {PASSPHRASE_VARIABLE}, or from a "
+    "person at the terminal."
+)
 
 
 def load_service_key(site: Site, now: datetime) -> SigningKey:
@@ -38,7 +43,12 @@ def load_service_key(site: Site, now: datetime) -> SigningKey:
     check_key_file_mode(path)
     passphrase = find_passphrase(site.seal.passphrase_file, os.environ, _prompt(path))
     os.environ.pop(PASSPHRASE_VARIABLE, None)
-    return load_signing_key(_read(path), passphrase=passphrase, now=now)
+    try:
+        return load_signing_key(_read(path), passphrase=passphrase, now=now)
+    except SigningDeniedError as error:
+        if passphrase is None:
+            raise SigningDeniedError(f"{error.text} {_WHERE_FROM}", file=str(path)) from None
+        raise
 
 
 def _read(path: Path) -> bytes:

@@ -41,7 +41,10 @@ def _answer_lines(result: dict[str, Any]) -> list[str]:
         words = ANSWERS[answer]
         if answer == "different" and characteristic["margin"] == [None, None]:
             words = "differs; no margin set"
-        lines.append(printable(f"  {characteristic['title']}: {words} ({characteristic['procedure']})"))
+        by = f" ({characteristic['procedure']})"
+        if characteristic["procedure"] == "none":
+            words, by = f"not compared. {characteristic['rule']['reason']}", ""
+        lines.append(printable(f"  {characteristic['title']}: {words}{by}"))
     if result["notices"]:
         codes = ", ".join(dict.fromkeys(n["code"] for n in result["notices"]))
         lines.append(f"  notices: {codes}")

@@ -277,10 +277,19 @@ class TestFolders:
             require_folders(site)
         assert not (tmp_path / "share").exists()
 
-    def test_a_folder_that_cannot_be_made(self, tmp_path: Path) -> None:
+    def test_a_file_in_the_place_of_a_folder(self, tmp_path: Path) -> None:
         (tmp_path / "inbox").write_text("a file", encoding="utf-8")
         site = parse_site(LAB.encode(), SITE_FILE, tmp_path)
-        with pytest.raises(EnvironmentFailedError, match="cannot make"):
+        with pytest.raises(EnvironmentFailedError, match="is a file and not a folder"):
+            require_folders(site)
+
+    def test_a_folder_that_cannot_be_made(self, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+        def refuse(path: Path, *_: object, **__: object) -> None:
+            raise PermissionError(13, "Permission denied", str(path))
+
+        monkeypatch.setattr(Path, "mkdir", refuse)
+        site = parse_site(LAB.encode(), SITE_FILE, tmp_path)
+        with pytest.raises(EnvironmentFailedError, match=r"cannot make .*inbox: Permission denied"):
             require_folders(site)
 
 

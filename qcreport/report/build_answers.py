@@ -12,6 +12,7 @@ from qcreport.report.pairs import (
     OPEN,
     WITHIN,
     PairView,
+    for_figure,
     higher_first,
     most_serious_first,
     null_of,
@@ -39,17 +40,18 @@ def most_serious(results: Sequence[CharacteristicResult]) -> CharacteristicResul
 def pair_sentence(pair: PairResult, numbers: Numbers, *, margin: str) -> str:
     """Return the answer for one pair as a sentence."""
     words, view = numbers.words, higher_first(pair, numbers.result)
+    drawn = for_figure(pair, numbers.result)
     at_once = words.at_once(with_reference=numbers.result.reference is not None)
     if pair.answer == "not_compared":
         return words.pair_not_compared(pair.first, pair.second)
-    range_text = numbers.range_with_unit(view)
+    range_text = numbers.range_with_unit(drawn)
     if pair.answer == "not_settled":
-        text = words.not_settled(view.first, view.second, range_text, at_once, margin, ratio=numbers.log)
+        text = words.not_settled(drawn.first, drawn.second, range_text, at_once, margin, ratio=numbers.log)
         return text if pair.needed_n is None else f"{text} {words.would_settle(pair.needed_n)}"
     if pair.answer == "equivalent":
-        return words.pair_within(view.first, view.second, range_text, at_once, margin)
+        return words.pair_within(drawn.first, drawn.second, range_text, at_once, margin)
     if pair.answer == "not_shown":
-        return words.not_shown(view.first, view.second, range_text, at_once)
+        return words.not_shown(drawn.first, drawn.second, range_text, at_once)
     stem = _stem(view, numbers, at_once)
     if pair.answer == "matters":
         return words.beyond(stem, margin)
@@ -57,8 +59,7 @@ def pair_sentence(pair: PairResult, numbers: Numbers, *, margin: str) -> str:
         return words.differs_within(stem, margin)
     if not view.has_margin:
         return words.differs_no_margin(stem)
-    text = words.open_beyond(stem, margin)
-    return text if pair.needed_n is None else f"{text} {words.would_settle(pair.needed_n)}"
+    return words.open_beyond(stem, margin)
 
 
 def _stem(view: PairView, numbers: Numbers, at_once: str) -> str:
@@ -94,7 +95,7 @@ def first_page_answer(numbers: Numbers, *, most: int, title: str, target: str, f
         lines = [_line(_furthest(ordered, result), numbers, words.none_shown(len(ordered), at_once))]
         return _answer(title, lines, _left_out(numbers), "", target)
     lines = []
-    beside = [higher_first(p, result) for p in serious[:most]]
+    beside = [for_figure(p, result) for p in serious[:most]]
     for index, pair in enumerate(serious[:most]):
         text = pair_sentence(pair, numbers, margin=said if index == 0 else margin)
         lines.append(_line(pair, numbers, text, beside))
@@ -112,7 +113,7 @@ def _line(
     pair: PairResult | None, numbers: Numbers, text: str, beside: Sequence[PairView] = ()
 ) -> AnswerLine:
     answer = "not_compared" if pair is None else pair.answer
-    view = None if pair is None else higher_first(pair, numbers.result)
+    view = None if pair is None else for_figure(pair, numbers.result)
     title = numbers.words.mark_alt(answer, view, numbers.decimals)
     return AnswerLine(
         mark=answer_mark(view, log=numbers.log, title=title, beside=beside),

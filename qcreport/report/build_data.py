@@ -52,15 +52,16 @@ def _group(
         text = value_in_cell(measurement, only, keys, words)
         if by_sample and measurement.sample != sample and measurement.sample is not None:
             sample = measurement.sample
-            text = f"{words.sample(_held(sample))}: {text}"
+            text = f"{words.sample(sample)}: {text}"
+            text = _held(text)
         parts.append(text)
     head = words.data_group(label, len(found), words.sheet(quoted_sheet(only)) if only else "")
-    return Cells(label=head, text=f"{_HOLD}{_HOLD} ".join(parts))
+    return Cells(label=head, text=f"{_HOLD}{_HOLD}{_HOLD} ".join(parts))
 
 
 def _held(text: str) -> str:
     """Return `text` without breaks, unless it is so long that it has to break."""
-    return text.replace(" ", _HOLD) if len(text) <= 24 else text
+    return text.replace(" ", _HOLD) if len(text) <= 40 else text
 
 
 def value_in_cell(

@@ -30,6 +30,7 @@ class _Frame:
     row_height: float
     bottom: float
     stroke: float
+    """Height for a stack of equal values."""
     decimals: int
     words: FigureWords
 
@@ -100,12 +101,11 @@ def _frame(
     means = [fixed(g.mean, decimals + 1) for g in groups if g.mean is not None]
     numbers = max((width_of(m, LABEL_SIZE) for m in means), default=0.0)
     row_height = 22.0 if len(groups) <= MANY_GROUPS else 17.0
-    ties = max((_most_ties(g) for g in groups), default=1)
     return _Frame(
         axis=Axis(low=low, high=high, left=labels + 10, right=WIDTH - max(numbers, 18) - 12, logarithmic=log),
         row_height=row_height,
         bottom=TOP + row_height * max(len(groups), 1) + 3,
-        stroke=min(8.0, (row_height * 0.62 - 1) / ties - 1.0),
+        stroke=row_height * 0.62 - 1,
         decimals=decimals,
         words=words,
     )
@@ -113,10 +113,6 @@ def _frame(
 
 def _label(group: GroupResult) -> tuple[str, ...]:
     return lines_of(group.label, LABEL_SIZE, LABEL_MOST, 2)
-
-
-def _most_ties(group: GroupResult) -> int:
-    return max(Counter(u.value for u in group.units).values(), default=1)
 
 
 def _row(group: GroupResult, y: float, frame: _Frame, keys: Mapping[str, str]) -> list[Shape]:
@@ -127,12 +123,14 @@ def _row(group: GroupResult, y: float, frame: _Frame, keys: Mapping[str, str]) -
         shift = (index - (len(lines) - 1) / 2) * 8.6
         shapes.append(Label(x=axis.left - 8, y=y + shift + 1, text=text, anchor="end", style="label"))
     seen: Counter[float] = Counter()
+    ties = Counter(u.value for u in group.units)
     for unit in group.units:
         if not math.isfinite(unit.value) or (axis.logarithmic and unit.value <= 0):
             continue
-        top = y - 1 - seen[unit.value] * (frame.stroke + 1)
+        stroke = min(8.0, frame.stroke / ties[unit.value] - 1)
+        foot = y - 1 - seen[unit.value] * (stroke + 1)
         seen[unit.value] += 1
-        shapes += _value(unit, axis.inside(unit.value), top, frame.stroke, keys)
+        shapes += _value(unit, axis.inside(unit.value), foot, stroke, keys)
     if group.mean is not None and not (axis.logarithmic and group.mean <= 0):
         x = axis.inside(group.mean)
         wedge = ((x, y + 1.2), (x - 3.1, y + 6.6), (x + 3.1, y + 6.6))

@@ -6,31 +6,33 @@ from collections.abc import Iterator
 from typing import Any
 
 from qcreport.errors import EnvironmentFailedError
-from qcreport.report.assets import FONT_FILES
 
+OWN_FAMILIES = ("Report Sans", "Report Serif", "Report-Sans", "Report-Serif")
 TOLERANCE = 0.75  # CSS pixels, 0.2 mm
 
 
 def require_own_fonts(document: Any) -> None:
-    """Refuse a document in which a character fell back to a font of the machine.
+    """Refuse a painted document in which a character fell back to a font of the machine, or to none.
+
+    Names from an export are made printable before; this guards against the laboratory's own templates.
 
     Raises
     ------
     EnvironmentFailedError
-        With the names of the fonts that came in.
+        With the fonts or characters that came in.
     """
-    own = {family for _, _, family in FONT_FILES.values()}
-    found = {_text(font.family) for font in document.fonts.values()}
-    strangers = sorted(found - own - {"Source Sans Pro", "Source Serif Pro", "Report Sans", "Report Serif"})
+    strangers = set()
+    for font in document.fonts.values():
+        family = font.family.decode() if isinstance(font.family, bytes) else str(font.family)
+        if not family.startswith(OWN_FAMILIES):
+            strangers.add(family)
+        if font.missing:
+            strangers.update(f"U+{code:04X}" for code in font.missing)
     if strangers:
         raise EnvironmentFailedError(
-            f"The pages would be set with fonts that are not ours: {', '.join(strangers)}. "
-            "Reports of two machines would differ. Check the font packages."
+            f"The pages would need what our fonts do not hold: {', '.join(sorted(strangers))}. "
+            "Reports of two machines would differ. Write the templates with characters that the fonts have."
         )
-
-
-def _text(value: Any) -> str:
-    return value.decode() if isinstance(value, bytes) else str(value)
 
 
 def require_inside_pages(document: Any) -> None:

@@ -59,18 +59,17 @@ def render_report(
 
 
 def lay_out(model: ReportModel, templates: TemplateSet) -> Any:
-    """Return the laid-out pages, checked: own fonts, nothing off the page."""
+    """Return the laid-out pages; nothing runs off a page."""
     from weasyprint import HTML
 
     from qcreport.report.fetcher import OwnAssetsFetcher
-    from qcreport.report.page_checks import require_inside_pages, require_own_fonts
+    from qcreport.report.page_checks import require_inside_pages
 
     html = render_html(model, templates)
     fetcher = OwnAssetsFetcher()
     with at_work(fetcher):
         fonts, style = _style(model.page_size, templates)
         document = HTML(string=html, url_fetcher=fetcher).render(font_config=fonts, stylesheets=[style])
-    require_own_fonts(document)
     require_inside_pages(document)
     return document
 
@@ -80,6 +79,7 @@ def write(document: Any, model: ReportModel, attachments: Sequence[Attachment]) 
     from weasyprint import Attachment as PdfAttachment
 
     from qcreport.report.finish import Finisher
+    from qcreport.report.page_checks import require_own_fonts
 
     moment = utc_moment(model.made_at)
     given = sorted(attachments, key=lambda a: a.name)
@@ -100,6 +100,7 @@ def write(document: Any, model: ReportModel, attachments: Sequence[Attachment]) 
         pdf = document.write_pdf(
             pdf_variant="pdf/a-3a", pdf_tags=True, attachments=inside, finisher=Finisher(given)
         )
+    require_own_fonts(document)
     return RenderedReport(pdf=pdf, pages=len(document.pages))
 
 

@@ -153,7 +153,7 @@ class AnswerWords(FigureWords):
         """Return how many values there are."""
         text = f"{values} values from {groups} {self.group if groups == 1 else self.group_plural}"
         if missing:
-            text += f"; {missing} cells marked as missing"
+            text += f"; {missing} {'cell' if missing == 1 else 'cells'} marked as missing"
         if censored:
             text += f"; {censored} known only by a limit"
         return text

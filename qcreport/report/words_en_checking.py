@@ -79,7 +79,9 @@ class CheckingWords(FigureWords):
 
     def test_name(self, name: str) -> str:
         """Return the name of an outlier test."""
-        return {"grubbs": "Grubbs’ test by group", "esd": "Generalized ESD by group"}.get(name, name)
+        return {"grubbs": "Grubbs’ test by group", "generalized_esd": "Generalized ESD by group"}.get(
+            name, name
+        )
 
     def without_it(self, changes: bool | None) -> str:
         """Return what leaving a value out would change."""

@@ -228,6 +228,12 @@ def test_nothing_but_our_own_assets_is_ever_fetched(text: bytes) -> None:
         render_job(job_of(left_out_group(characteristic()), site={"remark.html": text}))
 
 
+@pytest.mark.parametrize("text", ["שלום", "x \U0001f600"])
+def test_a_template_that_needs_another_font_is_refused(text: str) -> None:
+    with pytest.raises(EnvironmentFailedError, match="our fonts do not hold"):
+        render_job(job_of(left_out_group(characteristic()), site={"remark.html": text.encode()}))
+
+
 def test_what_would_run_off_the_page_is_refused() -> None:
     wide = b'<p style="white-space: nowrap; overflow-wrap: normal">' + b"WIDE" * 200 + b"</p>"
     with pytest.raises(EnvironmentFailedError, match="run off the page"):

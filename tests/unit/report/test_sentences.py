@@ -96,6 +96,7 @@ def test_an_open_pair_says_how_many_results_would_settle_it() -> None:
     assert sentence(result, pair).endswith(
         "About 14 results a batch would settle it, if the scatter is as seen here."
     )
+    assert "results a batch" not in sentence(result, dataclasses.replace(pair, answer="different"))
 
 
 def test_with_a_reference_the_batch_is_the_subject() -> None:
@@ -105,6 +106,15 @@ def test_with_a_reference_the_batch_is_the_subject() -> None:
     raised = dataclasses.replace(result.pairs[0], difference=1.9, lower=0.9, upper=2.9, answer="different")
     assert sentence(result, raised).startswith("LA-2403 is higher than the reference LB-2403 by 1.900 MPa")
     assert "all comparisons at once" in said[0]
+
+
+def test_where_nothing_is_settled_the_direction_is_that_of_the_figure() -> None:
+    result = characteristic(procedure="dunnett_unequal", reference="LB-2403")
+    pair = dataclasses.replace(result.pairs[2], difference=-0.4, lower=-1.1, upper=0.3, answer="not_settled")
+    assert "(LD-2404 minus LB-2403, all comparisons at once)" in sentence(result, pair)
+    assert "−1.100 to 0.300 MPa" in sentence(result, pair)
+    answer = first_page_answer(numbers(result), most=1, title="", target="", first_use=False)
+    assert answer.lines[0].mark.title.startswith("LD-2404 against LB-2403: −2.213 to −0.242")
 
 
 def test_ranks_say_typically() -> None:

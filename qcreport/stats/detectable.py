@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from typing import Literal
+from functools import lru_cache
+from typing import Literal, get_args
 
 from scipy import special
 
@@ -152,41 +153,49 @@ def sample_size_for(
         raise DegenerateDataError(
             "A sample size needs a positive margin, a variance and at least two groups."
         )
-    critical = _critical_values(procedure, n_groups, alpha)
+    if procedure not in get_args(Procedure):
+        raise DegenerateDataError(f"No sample size is known for the procedure {procedure}.")
 
-    def settles(n: int) -> bool:
-        return critical(n) * math.sqrt(2.0 * variance / n) < margin
+    def wanted(n: int) -> float:
+        """Return the n that the critical value at n asks for; n settles where it is below n."""
+        return 2.0 * variance * (critical_value(procedure, n_groups, alpha, n) / margin) ** 2
 
-    high = 2
-    while not settles(high):
-        high *= 2
-        if high > largest:
-            return None
-    low = high // 2
-    while high - low > 1 and high > 2:
-        middle = (low + high) // 2
-        low, high = (low, middle) if settles(middle) else (middle, high)
-    return high
+    # The critical value hardly depends on a large n, so what it asks for is nearly the answer itself; the
+    # bracket (too few, enough) makes the search end whatever it does.
+    too_few, enough, n = 1, largest + 1, largest
+    while enough - too_few > 1:
+        asked = wanted(n)
+        too_few, enough = (too_few, n) if asked < n else (n, enough)
+        guess = enough if asked >= largest else math.floor(asked) + 1
+        n = min(max(guess, too_few + 1), max(enough - 1, too_few + 1))
+    return None if enough > largest else enough
 
 
-def _critical_values(procedure: Procedure, k: int, alpha: float) -> Callable[[int], float]:
-    """Return the critical value as a function of a common n, equal variances."""
+@lru_cache(maxsize=4096)
+def critical_value(procedure: Procedure, k: int, alpha: float, n: int) -> float:
+    """Return what |statistic| must exceed among k groups of n results each, spreads alike, dimensionless.
+
+    Kept for the calls that follow: the pairs of one table ask for the same few.
+    """
     pairs = k * (k - 1) // 2
     level = sidak_level(alpha, k - 1)
-    table: dict[str, Callable[[int], float]] = {
-        "tukey_hsd": lambda n: studentized_range_isf(alpha, k, k * (n - 1)) / math.sqrt(2.0),
-        "tukey_kramer": lambda n: studentized_range_isf(alpha, k, k * (n - 1)) / math.sqrt(2.0),
-        "games_howell": lambda n: studentized_range_isf(alpha, k, 2 * (n - 1)) / math.sqrt(2.0),
-        "dunnett_c": lambda n: studentized_range_isf(alpha, k, n - 1) / math.sqrt(2.0),
-        "dunnett_t3": lambda n: maximum_modulus_isf(alpha, pairs, 2 * (n - 1)),
-        "tamhane_t2": lambda n: t_two_sided_quantile(sidak_level(alpha, pairs), 2 * (n - 1)),
-        "dunnett": lambda n: many_to_one_isf(alpha, n, [n] * (k - 1), k * (n - 1)),
-        "dunnett_unequal": lambda n: t_two_sided_quantile(level, 2 * (n - 1)),
-        "dunnett_weighted": lambda n: t_two_sided_quantile(level, n - 1),
-    }
-    if procedure not in table:
-        raise DegenerateDataError(f"No sample size is known for the procedure {procedure}.")
-    return table[procedure]
+    match procedure:
+        case "tukey_hsd" | "tukey_kramer":
+            return float(studentized_range_isf(alpha, k, k * (n - 1)) / math.sqrt(2.0))
+        case "games_howell":
+            return float(studentized_range_isf(alpha, k, 2 * (n - 1)) / math.sqrt(2.0))
+        case "dunnett_c":
+            return float(studentized_range_isf(alpha, k, n - 1) / math.sqrt(2.0))
+        case "dunnett_t3":
+            return float(maximum_modulus_isf(alpha, pairs, 2 * (n - 1)))
+        case "tamhane_t2":
+            return t_two_sided_quantile(sidak_level(alpha, pairs), 2 * (n - 1))
+        case "dunnett":
+            return float(many_to_one_isf(alpha, n, [n] * (k - 1), k * (n - 1)))
+        case "dunnett_unequal":
+            return t_two_sided_quantile(level, 2 * (n - 1))
+        case "dunnett_weighted":
+            return t_two_sided_quantile(level, n - 1)
 
 
 def _root(excess: Callable[[float], float], start: float) -> float:

@@ -48,3 +48,25 @@ def _key(measurements: MeasurementSet, m: Measurement) -> list[str | None]:
     else:
         parts = ["sample", measurements.layout_name, m.line, m.batch, m.sample, m.reading, m.characteristic]
     return [None if part is None else clean_text(part) for part in parts]
+
+
+def content_digest(measurements: MeasurementSet) -> str | None:
+    """Return the digest of what an export holds, wherever it stands; None where exports are not joined.
+
+    Two workbooks of one digest hold the same measurements with the same texts, times and marks and give the
+    same notices, in whatever order of rows and whatever bytes.
+    """
+    if not measurements.measurements or any(m.sample is None for m in measurements.measurements):
+        return None
+    rows = sorted(
+        to_json_bytes([item.identity, *_content(item.measurement)]) for item in identified(measurements)
+    )
+    notices = sorted(clean_text(notice.code) for notice in measurements.notices)
+    return sha256_hex(b"\n".join([to_json_bytes(notices), *rows]))
+
+
+def _content(m: Measurement) -> list[object]:
+    texts = (m.text, m.unit, m.status or "", m.time or "", *m.marks)
+    factors = [[clean_text(part) for part in factor] for factor in m.factors]
+    censored = None if m.censored is None else m.censored.value
+    return [[clean_text(text) for text in texts], factors, m.decimals, censored]

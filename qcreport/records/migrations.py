@@ -142,6 +142,109 @@ _MEASUREMENTS = (
 )
 
 
+# SQLite cannot take NOT NULL from a column, so the table is made anew; every row and its id stay as they are.
+_MEASUREMENTS_OF_IMPORTS = (
+    """
+    CREATE TABLE measurement_2 (
+        id INTEGER NOT NULL PRIMARY KEY,
+        identity TEXT NOT NULL,
+        version INTEGER NOT NULL,
+        layout TEXT NOT NULL,
+        line TEXT,
+        batch TEXT NOT NULL,
+        sample TEXT,
+        reading TEXT,
+        characteristic TEXT NOT NULL,
+        value REAL,
+        text TEXT NOT NULL,
+        decimals INTEGER NOT NULL,
+        unit TEXT NOT NULL,
+        censored TEXT,
+        status TEXT,
+        time TEXT,
+        cell TEXT NOT NULL,
+        marks TEXT NOT NULL,
+        factors TEXT NOT NULL,
+        export_sha256 TEXT NOT NULL REFERENCES export (sha256),
+        number TEXT REFERENCES run (number),
+        recorded_at TEXT NOT NULL,
+        UNIQUE (identity, version)
+    )
+    """,
+    "INSERT INTO measurement_2 SELECT * FROM measurement ORDER BY id",
+    "DROP TABLE measurement",
+    "ALTER TABLE measurement_2 RENAME TO measurement",
+    "CREATE INDEX measurement_by_batch ON measurement (characteristic, line, batch)",
+    "CREATE INDEX measurement_by_run ON measurement (number)",
+    "CREATE INDEX measurement_by_sample ON measurement (layout, batch, sample)",
+    "CREATE INDEX measurement_by_export ON measurement (export_sha256)",
+    """
+    CREATE TRIGGER measurement_no_update BEFORE UPDATE ON measurement
+    BEGIN SELECT RAISE(ABORT, 'a measurement is never changed; a new version is added'); END
+    """,
+    """
+    CREATE TRIGGER measurement_no_delete BEFORE DELETE ON measurement
+    BEGIN SELECT RAISE(ABORT, 'a measurement is never removed'); END
+    """,
+)
+
+_CONTENTS = (
+    # What an export holds, read by a layout: the same digest in a re-saved workbook with the same values.
+    """
+    CREATE TABLE content (
+        export_sha256 TEXT NOT NULL REFERENCES export (sha256),
+        layout_sha256 TEXT NOT NULL,
+        content_sha256 TEXT NOT NULL,
+        PRIMARY KEY (export_sha256, layout_sha256)
+    )
+    """,
+    "CREATE INDEX content_by_digest ON content (content_sha256)",
+    """
+    CREATE TRIGGER content_no_update BEFORE UPDATE ON content
+    BEGIN SELECT RAISE(ABORT, 'what an export holds never changes'); END
+    """,
+    """
+    CREATE TRIGGER content_no_delete BEFORE DELETE ON content
+    BEGIN SELECT RAISE(ABORT, 'what an export holds never changes'); END
+    """,
+    # Which lines, batches and characteristics a report compares, for the list of reports.
+    """
+    CREATE TABLE run_group (
+        number TEXT NOT NULL REFERENCES run (number),
+        characteristic TEXT NOT NULL,
+        line TEXT NOT NULL,
+        batch TEXT NOT NULL,
+        PRIMARY KEY (number, characteristic, line, batch)
+    )
+    """,
+    """
+    INSERT INTO run_group
+    SELECT DISTINCT number, characteristic, coalesce(line, ''), batch FROM measurement
+    WHERE number IS NOT NULL
+    """,
+    # Computations without a report.
+    """
+    CREATE TABLE trial (
+        sequence INTEGER NOT NULL PRIMARY KEY REFERENCES ledger (sequence),
+        export_sha256 TEXT NOT NULL REFERENCES export (sha256),
+        plan_name TEXT NOT NULL
+    )
+    """,
+    "CREATE INDEX trial_by_export ON trial (export_sha256)",
+)
+
+_SETTINGS = (
+    """
+    CREATE TABLE setting_file (
+        name TEXT NOT NULL PRIMARY KEY,
+        sha256 TEXT NOT NULL
+    )
+    """,
+    "CREATE INDEX ledger_by_kind ON ledger (kind, sequence)",
+    "CREATE INDEX ledger_by_time ON ledger (at)",
+)
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Migration:
     """One numbered step."""
@@ -159,5 +262,10 @@ MIGRATIONS: tuple[Migration, ...] = (
         number=1,
         name="ledger, exports, runs and measurements",
         statements=(*_LEDGER, *_EXPORTS, *_RUNS, *_MEASUREMENTS),
+    ),
+    Migration(
+        number=2,
+        name="imports, contents, groups of reports, settings seen",
+        statements=(*_MEASUREMENTS_OF_IMPORTS, *_CONTENTS, *_SETTINGS),
     ),
 )

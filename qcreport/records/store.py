@@ -3,21 +3,18 @@
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
-from typing import Any, TypeVar
+from typing import Any
 
-from sqlalchemy import Connection, RowMapping, insert, select
+from sqlalchemy import ColumnElement, Connection, insert, select
 
+from qcreport.analysis.provenance import Retest, ValueChange
 from qcreport.canonical import finite_or_none, to_json_bytes
 from qcreport.measurements import Measurement, MeasurementSet
 from qcreport.records.facts import clean_text
 from qcreport.records.identity import Identified, identified
 from qcreport.records.tables import MEASUREMENT
-
-_CHUNK = 500
-
-T = TypeVar("T")
+from qcreport.records.versions import Met, chunks, known_samples, met, retest_of, sample_key, versions_of
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -44,23 +41,17 @@ class Survey:
     """Measurements seen with the same text."""
     changed: tuple[ChangedValue, ...]
     """Measurements seen with another text, export order."""
+    not_joined: int = 0
+    """Measurements without a sample id."""
+    history: tuple[ValueChange, ...] = ()
+    """Every value that another export gave otherwise, export order."""
+    retests: tuple[Retest, ...] = ()
+    """Samples that were measured before, export order."""
 
     @property
     def nothing_new(self) -> bool:
         """True where the export holds measurements and all are known."""
         return self.known > 0 and self.new == 0 and not self.changed
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class _Version:
-    number: int
-    """1 for the first text, one more for each change."""
-    shown: str
-    """Text and unit of the newest version."""
-    run: str
-    """Report number of the run that recorded it."""
-    exports: frozenset[tuple[str, str]]
-    """(export digest, shown text) of every version."""
 
 
 def survey(connection: Connection, measurements: MeasurementSet) -> Survey:
@@ -69,26 +60,36 @@ def survey(connection: Connection, measurements: MeasurementSet) -> Survey:
     return found
 
 
-def record(connection: Connection, measurements: MeasurementSet, *, number: str, at: str) -> Survey:
-    """Write what is new or changed in an export and return what it was."""
+def record(connection: Connection, measurements: MeasurementSet, *, number: str | None, at: str) -> Survey:
+    """Write what is new or changed in an export and return what it was; `number` is None for an import."""
     found, rows = _compare(connection, measurements)
     export = {"export_sha256": measurements.export_sha256, "number": number, "recorded_at": at}
     layout = clean_text(measurements.layout_name)
-    for chunk in _chunks(rows):
-        values = [
-            {"identity": item.identity, "version": version, "layout": layout, **_columns(item.measurement)}
-            | export
-            for item, version in chunk
-        ]
+    values = [
+        {"identity": item.identity, "version": version, "layout": layout, **_columns(item.measurement)}
+        | export
+        for item, version in rows
+    ]
+    if values:
         connection.execute(insert(MEASUREMENT), values)
     return found
 
 
 def digest_of_run(connection: Connection, number: str) -> str:
     """Return the SHA-256 over everything that a run recorded, so that a later change of a row shows."""
-    query = select(MEASUREMENT).where(MEASUREMENT.c.number == number).order_by(MEASUREMENT.c.id)
+    return _digest(connection, MEASUREMENT.c.number == number)
+
+
+def digest_of_import(connection: Connection, export_sha256: str, layout: str) -> str:
+    """Return the same over what an import of an export by a layout recorded."""
+    c = MEASUREMENT.c
+    where = (c.export_sha256 == export_sha256) & (c.layout == clean_text(layout)) & c.number.is_(None)
+    return _digest(connection, where)
+
+
+def _digest(connection: Connection, where: ColumnElement[bool]) -> str:
     digest = hashlib.sha256()
-    for row in connection.execute(query).mappings():
+    for row in connection.execute(select(MEASUREMENT).where(where).order_by(MEASUREMENT.c.id)).mappings():
         columns = {name: value for name, value in row.items() if name != "id"}
         digest.update(to_json_bytes(columns) + b"\n")
     return digest.hexdigest()
@@ -98,60 +99,43 @@ def _compare(
     connection: Connection, measurements: MeasurementSet
 ) -> tuple[Survey, list[tuple[Identified, int]]]:
     """Return the survey, and what has to be written with its version number."""
-    new = known = 0
-    changed: list[ChangedValue] = []
-    rows: list[tuple[Identified, int]] = []
-    for chunk in _chunks(identified(measurements)):
-        versions = _versions(connection, [item.identity for item in chunk])
-        for item in chunk:
-            shown = _shown(item.measurement)
-            version = versions.get(item.identity)
-            if version is None:
-                new += 1
-                rows.append((item, 1))
-            elif shown == version.shown or (measurements.export_sha256, shown) in version.exports:
-                known += 1  # an old export run again does not bring its old values back
-            else:
-                changed.append(_changed(item.measurement, version))
-                rows.append((item, version.number + 1))
-    return Survey(new=new, known=known, changed=tuple(changed)), rows
+    export = measurements.export_sha256
+    judged: list[tuple[Identified, Met]] = []
+    for chunk in chunks(identified(measurements)):
+        versions = versions_of(connection, [item.identity for item in chunk])
+        pairs = [(i, met(i.measurement, versions.get(i.identity, []), export)) for i in chunk]
+        unseen = [item for item, found in pairs if found.first_seen]
+        samples = known_samples(connection, measurements.layout_name, unseen, export)
+        judged += [(item, _one_more(item, found, samples)) for item, found in pairs]
+    changes = tuple(m.change for _, m in judged if m.change is not None)
+    new = sum(m.version == 1 for _, m in judged)
+    changed = tuple(_changed(m.change) for _, m in judged if m.changed_now and m.change is not None)
+    return (
+        Survey(
+            new=new,
+            known=len(judged) - new - len(changed),
+            changed=changed,
+            not_joined=sum(item.measurement.sample is None for item, _ in judged),
+            history=changes,
+            retests=tuple(m.retest for _, m in judged if m.retest is not None),
+        ),
+        [(item, m.version) for item, m in judged if m.version is not None],
+    )
 
 
-def _changed(measurement: Measurement, version: _Version) -> ChangedValue:
+def _one_more(item: Identified, found: Met, samples: dict[tuple[str | None, ...], str]) -> Met:
+    """Flag a value that no other export held, of a sample that one did hold."""
+    source = samples.get(sample_key(item.measurement))
+    if not found.first_seen or source is None:
+        return found
+    retest = retest_of(item.measurement, "one more result", source)
+    return Met(version=found.version, change=found.change, retest=retest, first_seen=True)
+
+
+def _changed(change: ValueChange) -> ChangedValue:
     return ChangedValue(
-        cell=clean_text(str(measurement.cell)),
-        old_text=version.shown,
-        new_text=_shown(measurement),
-        old_number=version.run,
+        cell=change.cell, old_text=change.before, new_text=change.after, old_number=change.source
     )
-
-
-def _versions(connection: Connection, identities: Sequence[str]) -> dict[str, _Version]:
-    c = MEASUREMENT.c
-    query = select(c.identity, c.version, c.text, c.unit, c.number, c.export_sha256)
-    query = query.where(c.identity.in_(identities)).order_by(c.identity, c.version)
-    rows: dict[str, list[RowMapping]] = {}
-    for row in connection.execute(query).mappings():
-        rows.setdefault(row["identity"], []).append(row)
-    return {identity: _version(found) for identity, found in rows.items()}
-
-
-def _version(rows: Sequence[RowMapping]) -> _Version:
-    newest = rows[-1]
-    return _Version(
-        number=newest["version"],
-        shown=_with_unit(newest["text"], newest["unit"]),
-        run=newest["number"],
-        exports=frozenset((row["export_sha256"], _with_unit(row["text"], row["unit"])) for row in rows),
-    )
-
-
-def _shown(measurement: Measurement) -> str:
-    return _with_unit(clean_text(measurement.text), clean_text(measurement.unit))
-
-
-def _with_unit(text: str, unit: str) -> str:
-    return f"{text} {unit}".rstrip()
 
 
 def _columns(m: Measurement) -> dict[str, Any]:
@@ -180,8 +164,3 @@ def _clean(text: str | None) -> str | None:
 
 def _json(value: list[Any]) -> str:
     return to_json_bytes(value).decode("utf-8")
-
-
-def _chunks(items: Sequence[T]) -> Iterator[Sequence[T]]:
-    for start in range(0, len(items), _CHUNK):
-        yield items[start : start + _CHUNK]

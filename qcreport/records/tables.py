@@ -104,6 +104,38 @@ MEASUREMENT = Table(
     Column("marks", String, nullable=False),
     Column("factors", String, nullable=False),
     Column("export_sha256", String, nullable=False),
-    Column("number", String, nullable=False),
+    Column("number", String),
     Column("recorded_at", String, nullable=False),
+)
+
+CONTENT = Table(
+    "content",
+    METADATA,
+    Column("export_sha256", String, primary_key=True),
+    Column("layout_sha256", String, primary_key=True),
+    Column("content_sha256", String, nullable=False),
+)
+
+RUN_GROUP = Table(
+    "run_group",
+    METADATA,
+    Column("number", String, primary_key=True),
+    Column("characteristic", String, primary_key=True),
+    Column("line", String, primary_key=True),
+    Column("batch", String, primary_key=True),
+)
+
+TRIAL = Table(
+    "trial",
+    METADATA,
+    Column("sequence", Integer, primary_key=True),
+    Column("export_sha256", String, nullable=False),
+    Column("plan_name", String, nullable=False),
+)
+
+SETTING_FILE = Table(
+    "setting_file",
+    METADATA,
+    Column("name", String, primary_key=True),
+    Column("sha256", String, nullable=False),
 )

@@ -42,12 +42,23 @@ class PlanSettings:
 
 def load_plans(site: Site) -> tuple[PlanSettings, ...]:
     """Return every plan of the site, by file name; a ConfigError with the faults of all files."""
-    folder = site.root / "config" / "plans"
+    return load_plans_below(site.root)
+
+
+def load_plans_below(root: Path) -> tuple[PlanSettings, ...]:
+    """Return every plan below a site's folder, also where its site.toml is faulty.
+
+    Raises
+    ------
+    ConfigError
+        With the faults of all files.
+    """
+    folder = root / "config" / "plans"
     plans: list[PlanSettings] = []
     faults: list[Fault] = []
     for path in sorted(folder.glob("*.toml")):
         try:
-            plans.append(load_plan(site, path))
+            plans.append(load_plan(root, path))
         except ConfigError as error:
             faults.extend(error.faults)
     names = [p.plan.name for p in plans]
@@ -61,7 +72,7 @@ def load_plans(site: Site) -> tuple[PlanSettings, ...]:
     return tuple(plans)
 
 
-def load_plan(site: Site, path: Path) -> PlanSettings:
+def load_plan(root: Path, path: Path) -> PlanSettings:
     """Return one plan with its layout and rules; a ConfigError with all faults found."""
     plan_file = _read(path, None)
     plan = parse_plan(plan_file.data, path.name)
@@ -69,12 +80,12 @@ def load_plan(site: Site, path: Path) -> PlanSettings:
     layout_file = rules_file = None
     layout, rules = None, None
     try:
-        layout_file = _read(_layout_path(site, plan.layout, path), (path.name, "layout"))
+        layout_file = _read(_layout_path(root, plan.layout, path), (path.name, "layout"))
         layout = parse_layout(layout_file.data, layout_file.name)
     except ConfigError as error:
         faults.extend(error.faults)
     try:
-        rules_file = _read(site.root / "config" / "rules" / f"{plan.rules}.toml", (path.name, "rules"))
+        rules_file = _read(root / "config" / "rules" / f"{plan.rules}.toml", (path.name, "rules"))
         rules = parse_rules(rules_file.data, rules_file.name)
     except ConfigError as error:
         faults.extend(error.faults)
@@ -96,10 +107,10 @@ def find_plan(site: Site, name_or_file: str) -> PlanSettings:
     """Return the plan of that name in config/plans, or of that file."""
     path = Path(name_or_file)
     if path.suffix == ".toml" and path.is_file():
-        return load_plan(site, path)
+        return load_plan(site.root, path)
     inside = site.root / "config" / "plans" / f"{name_or_file}.toml"
     if inside.is_file():
-        return load_plan(site, inside)
+        return load_plan(site.root, inside)
     plans = load_plans(site)
     for plan in plans:
         if plan.plan.name == name_or_file:
@@ -110,10 +121,10 @@ def find_plan(site: Site, name_or_file: str) -> PlanSettings:
     )
 
 
-def _layout_path(site: Site, layout: str, plan_path: Path) -> Path:
+def _layout_path(root: Path, layout: str, plan_path: Path) -> Path:
     if layout.endswith(".toml"):
         return plan_path.parent / layout
-    return site.root / "config" / "layouts" / f"{layout}.toml"
+    return root / "config" / "layouts" / f"{layout}.toml"
 
 
 def _read(path: Path, asked_by: tuple[str, str] | None) -> SettingsFile:

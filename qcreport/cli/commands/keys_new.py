@@ -16,9 +16,13 @@ from qcreport.settings.site import Site, load_site, require_folders
 from qcreport.signing.new_key import new_key
 from qcreport.signing.passphrase import find_passphrase
 
+LONGEST_DAYS = 3660
+
 
 def run(arguments: argparse.Namespace) -> int:
     """Make a key; a service key is also entered in site.toml."""
+    if not 1 <= arguments.days <= LONGEST_DAYS:
+        raise UsageError(f"A key is made for 1 to {LONGEST_DAYS} days, not {arguments.days}.")
     site = load_site(Path(arguments.site))
     require_folders(site)
     files = key_files(site, arguments.purpose, arguments.name)

@@ -74,8 +74,15 @@ def _layout(arguments: argparse.Namespace, export_name: str) -> tuple[SettingsFi
             raise ConfigError((Fault(text=f"there is no layout {arguments.layout!r}", file=str(path)),))
         file = SettingsFile(name=path.name, data=read_bytes(path, "the layout"))
         return file, site.limits, site.intake.second_look
-    plans = fitting_plans(export_name, load_plans(site))
-    return plans[0].layout_file, site.limits, site.intake.second_look
+    plans = load_plans(site)
+    try:
+        return fitting_plans(export_name, plans)[0].layout_file, site.limits, site.intake.second_look
+    except ExportRefusedError as error:
+        known = ", ".join(p.stem for p in sorted((site.root / "config" / "layouts").glob("*.toml")))
+        raise UsageError(
+            f"{error.found} Name a layout: --layout NAME|FILE. Layouts of this site: {known or 'none'}",
+            file=export_name,
+        ) from None
 
 
 def _table(measurements: MeasurementSet) -> list[str]:

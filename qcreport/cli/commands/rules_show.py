@@ -16,7 +16,7 @@ def run(arguments: argparse.Namespace) -> int:
     """Print a decision table, of the site where there is one, else as shipped."""
     folder = _folder(Path(arguments.site))
     path = folder / f"{arguments.table}.toml"
-    if not path.is_file():
+    if path.parent != folder or not path.is_file():
         known = ", ".join(p.stem for p in sorted(folder.glob("*.toml")))
         raise UsageError(f"No table {arguments.table!r} in {folder}. There are: {known}", file=str(path))
     print(table_text(parse_rules(path.read_bytes(), path.name)))

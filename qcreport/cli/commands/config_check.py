@@ -68,7 +68,7 @@ def _next(site: Site, named: str) -> str:
     if not any((site.root / "config" / "plans").glob("*.toml")):
         return (
             f"Next: write a plan into {site.root / 'config' / 'plans'} and its layout into "
-            f"{site.root / 'config' / 'layouts'}; what it reads shows qcreport layout try EXPORT --layout FILE"
+            f"{site.root / 'config' / 'layouts'}; qcreport layout try EXPORT --layout FILE shows it"
         )
     return f"Next: drop an export into {site.folders.inbox} and run qcreport watch --site {named}"
 

@@ -45,6 +45,10 @@ class Kind(StrEnum):
     SHARE_LOST = "share lost"
     SHARE_BACK = "share back"
     NIGHT_RUN = "night run"
+    IMPORTED = "imported"
+    """A past export taken into the store without a report."""
+    APPROVED = "approved"
+    """Plan, layout and rules approved by a person's key."""
     FAILED = "failed"
     """An export that met a fault of the program and was set aside: neither read nor refused."""
 

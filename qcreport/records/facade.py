@@ -7,29 +7,32 @@ a kill: a step of one claim is written once.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
-from contextlib import AbstractContextManager, contextmanager
+from collections.abc import Callable
+from contextlib import AbstractContextManager
 from dataclasses import dataclass
 from pathlib import Path
 
 from sqlalchemy import Connection, insert, select
 
+from qcreport.analysis.provenance import OtherRun
 from qcreport.canonical import sha256_hex
 from qcreport.durable import make_folder
 from qcreport.errors import ExportRefusedError, LedgerError
 from qcreport.measurements import MeasurementSet
-from qcreport.records import ledger, runs, store
+from qcreport.records import ledger, listing, runs, same_data, store
 from qcreport.records.archive import Archive
 from qcreport.records.chain import Entry, Kind
 from qcreport.records.database import Database
+from qcreport.records.decisions import Decisions, changes_facts
 from qcreport.records.facts import Facts, clean_text
+from qcreport.records.imports import Imports
 from qcreport.records.ledger import Step
 from qcreport.records.lock import exclusive
-from qcreport.records.lookups import Lookups
-from qcreport.records.moments import Clock, utc_text
+from qcreport.records.moments import Clock
 from qcreport.records.run import Answers, Reservation, Run, RunInputs, Slot, run_key
+from qcreport.records.same_data import note_content
 from qcreport.records.store import Survey
-from qcreport.records.tables import EXPORT, REFUSAL
+from qcreport.records.tables import EXPORT, REFUSAL, TRIAL
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -60,14 +63,12 @@ class Reading:
     """Notice codes, each once."""
     survey: Survey
     """What the store held of it."""
+    content: str | None = None
+    """Digest of what it holds; None where exports are not joined."""
 
 
-class Records(Lookups):
+class Records(Decisions, Imports):
     """Archive, ledger, numbers and measurements of one site."""
-
-    def __init__(self, *, database: Database, archive: Archive, clock: Clock) -> None:
-        super().__init__(database=database, archive=archive)
-        self._clock = clock
 
     @classmethod
     def open(cls, folder: Path, clock: Clock, *, archive_folder: Path | None = None) -> Records:
@@ -158,7 +159,11 @@ class Records(Lookups):
         facts |= {"layout_sha256": reading.layout_sha256, "measurements": reading.n_measurements}
         facts |= {"notices": reading.notices, "new": reading.survey.new, "known": reading.survey.known}
         facts |= {"changed": len(reading.survey.changed)}
-        return self.note(Kind.READ, facts, actor=actor, step=Step(claim=claim, subject=reading.plan_name))
+        facts |= {"retests": len(reading.survey.retests), "not_joined": reading.survey.not_joined}
+        with self._moment() as (connection, now):
+            note_content(connection, export_sha256, reading.layout_sha256, reading.content)
+            step = Step(claim=claim, subject=reading.plan_name)
+            return self._append(connection, now, Kind.READ, facts, actor, step)
 
     def reserve(
         self,
@@ -208,17 +213,42 @@ class Records(Lookups):
                 run = _required(connection, slot.number)
         return Reservation(run=run, context=self.archive.read(run.context_sha256))
 
-    def compared(self, claim: str, *, number: str, result: bytes, answers: Answers, actor: str) -> Entry:
-        """Record what a run found; `result.json` goes into the archive."""
+    def compared(
+        self,
+        claim: str,
+        *,
+        number: str,
+        result: bytes,
+        answers: Answers,
+        actor: str,
+        others: tuple[OtherRun, ...] = (),
+    ) -> Entry:
+        """Record what a run found and what it changed against others; `result.json` goes into the archive."""
         self.archive.store(result)
         result_sha256 = sha256_hex(result)
         with self._moment() as (connection, now):
             run = _required(connection, number)
             facts = {**_run_facts(run), "claim": claim, "result_sha256": result_sha256, "answers": answers}
+            facts["others"] = [
+                {"number": o.number, "k": o.k, "changes": changes_facts(o.changes)} for o in others
+            ]
             step = Step(claim=claim, subject=f"{number} {result_sha256}")
             entry = self._append(connection, now, Kind.COMPARED, facts, actor, step)
             if run.sealing is None:
                 runs.set_compared(connection, number, result_sha256=result_sha256, answers=answers)
+            return entry
+
+    def computed_only(
+        self, claim: str, *, plan_name: str, export_sha256: str, facts: Facts, actor: str
+    ) -> Entry:
+        """Record a computation without a report: it uses no number; later reports tell of it."""
+        with self._moment() as (connection, now):
+            step = Step(claim=claim, subject=plan_name)
+            before = ledger.head(connection)
+            entry = self._append(connection, now, Kind.COMPARED, facts, actor, step)
+            if entry.sequence > before.sequence:
+                row = {"sequence": entry.sequence, "export_sha256": export_sha256}
+                connection.execute(insert(TRIAL).values(row | {"plan_name": clean_text(plan_name)}))
             return entry
 
     def sealed(
@@ -254,13 +284,12 @@ class Records(Lookups):
             facts |= {"report_name": report_name, "report_sha256": report_sha256, "answers": run.answers}
             facts |= {"new": found.new, "known": found.known, "changed": len(found.changed)}
             facts |= {"measurements_sha256": store.digest_of_run(connection, number)}
+            listing.note_groups(connection, number, measurements)
             self._append(connection, now, Kind.SEALED, facts, actor, Step(claim=claim, subject=number))
+            if run.inputs.replaces:
+                facts = {"number": run.inputs.replaces, "replaced_by": number, "reason": run.reason}
+                self._append(connection, now, Kind.REPLACED, facts, actor, Step(claim=claim, subject=number))
             return found
-
-    def note(self, kind: Kind, facts: Facts, *, actor: str, step: Step | None = None) -> Entry:
-        """Append any other entry."""
-        with self._moment() as (connection, now):
-            return self._append(connection, now, kind, facts, actor, step)
 
     def issuing(
         self, key: str, *, tries: int = 1, pause: Callable[[], None] = lambda: None
@@ -277,17 +306,6 @@ class Records(Lookups):
         busy = "Another process is answering this export at the moment. Try again when it is done."
         return exclusive(folder / f"{key[:2]}.lock", busy=busy, tries=tries, pause=pause)
 
-    @contextmanager
-    def _moment(self) -> Iterator[tuple[Connection, str]]:
-        """Begin a writing transaction and take its time inside, so that entries are in order of time."""
-        with self.database.write() as connection:
-            yield connection, utc_text(self._clock())
-
-    def _append(
-        self, connection: Connection, now: str, kind: Kind, facts: Facts, actor: str, step: Step | None
-    ) -> Entry:
-        return ledger.append(connection, at=now, actor=actor, kind=kind, facts=facts, step=step)
-
     def _slot(
         self, connection: Connection, export_sha256: str, plan_name: str, year: int, now: str
     ) -> tuple[int, Slot]:
@@ -296,13 +314,9 @@ class Records(Lookups):
         if received_at is None:
             raise LedgerError("A number is reserved only for an export that was received.")
         serial, number = runs.next_number(connection, year)
-        k = runs.next_k(connection, export_sha256, plan_name)
+        k = same_data.next_k(connection, export_sha256, plan_name)
         head = ledger.head(connection)
         return serial, Slot(number=number, k=k, n=k, made_at=now, received_at=received_at, ledger_head=head)
-
-    def _require_archived(self, sha256: str) -> None:
-        if not self.archive.has(sha256):
-            raise LedgerError(f"{sha256} is not in the archive; bytes are kept before they are recorded.")
 
 
 def _required(connection: Connection, number: str) -> Run:

@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 from qcreport.measurements import MeasurementSet
-from qcreport.records import ledger, listing, runs, store
+from qcreport.records import ledger, listing, runs, same_data, store
 from qcreport.records.archive import Archive
 from qcreport.records.chain import Entry, Head, Kind
 from qcreport.records.database import Database
-from qcreport.records.listing import OpenRefusal, ReportRow
+from qcreport.records.listing import EVERYTHING, OpenRefusal, ReportRow, Wanted
 from qcreport.records.run import Run
+from qcreport.records.standing import Standing, standings
 from qcreport.records.store import Survey
 
 
@@ -51,15 +52,35 @@ class Lookups:
         with self.database.read() as connection:
             return runs.of_export(connection, export_sha256, plan_name)
 
+    def runs_over_data(self, export_sha256: str, plan_name: str) -> tuple[Run, ...]:
+        """Return the runs by a plan over an export and over every other that holds the same, by k."""
+        with self.database.read() as connection:
+            return same_data.runs_over(connection, export_sha256, plan_name)
+
+    def trials_over_data(self, export_sha256: str, plan_name: str) -> int:
+        """Return how often the same data were computed by a plan without a report."""
+        with self.database.read() as connection:
+            return same_data.trials_over(connection, export_sha256, plan_name)
+
+    def content_of(self, export_sha256: str, layout_sha256: str) -> str | None:
+        """Return the digest of what an export holds as a layout reads it, or None."""
+        with self.database.read() as connection:
+            return same_data.content_of(connection, export_sha256, layout_sha256)
+
+    def standings(self) -> dict[str, Standing]:
+        """Return what became of each report after its seal, where anything did."""
+        with self.database.read() as connection:
+            return standings(connection)
+
     def survey(self, measurements: MeasurementSet) -> Survey:
         """Return what of an export is new, known or changed."""
         with self.database.read() as connection:
             return store.survey(connection, measurements)
 
-    def reports(self) -> tuple[ReportRow, ...]:
-        """Return one row a run, in order of number."""
+    def reports(self, wanted: Wanted = EVERYTHING) -> tuple[ReportRow, ...]:
+        """Return one row a run, in order of number; of all, or of those wanted."""
         with self.database.read() as connection:
-            return listing.reports(connection)
+            return listing.reports(connection, wanted)
 
     def open_refusals(self) -> tuple[OpenRefusal, ...]:
         """Return the refusals that nobody has mended yet, oldest first."""

@@ -30,6 +30,8 @@ class RunInputs:
     """(file name, digest) of every template and style used."""
     left_out: tuple[str, ...] = ()
     """Cells that a person left out."""
+    replaces: str = ""
+    """Number of the report that this run replaces; empty where it replaces none."""
 
     def digests(self) -> tuple[str, ...]:
         """Return every digest, each once."""
@@ -47,6 +49,8 @@ class RunInputs:
         }
         if self.left_out:
             document["left_out"] = sorted(self.left_out)
+        if self.replaces:
+            document["replaces"] = self.replaces
         return document
 
 
@@ -64,6 +68,7 @@ def inputs_from_json(document: dict[str, Any]) -> RunInputs:
         rules_sha256=document["rules"],
         templates=tuple(sorted(document["templates"].items())),
         left_out=tuple(document.get("left_out", ())),
+        replaces=document.get("replaces", ""),
     )
 
 

@@ -50,9 +50,9 @@ def next_number(connection: Connection, year: int) -> tuple[int, str]:
     return serial, f"{year:04d}-{serial:04d}"
 
 
-def next_k(connection: Connection, export_sha256: str, plan_name: str) -> int:
-    """Return k of the next run over an export by a plan."""
-    return len(of_export(connection, export_sha256, plan_name)) + 1
+def where(connection: Connection, *conditions: ColumnElement[bool]) -> tuple[Run, ...]:
+    """Return the runs that meet every condition on the table, in order of number."""
+    return _many(connection, *conditions)
 
 
 def insert_reserved(

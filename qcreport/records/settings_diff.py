@@ -53,7 +53,10 @@ def _items(path: str, value: Any) -> Iterator[tuple[str, str]]:
             yield from _items(f"{path}[{name}]", item)
     else:
         text = _text(value)
-        yield path, text if len(text) <= _LONGEST else f"{text[:_LONGEST]}… ({sha256_hex(text.encode())[:16]})"
+        yield (
+            path,
+            text if len(text) <= _LONGEST else f"{text[:_LONGEST]}… ({sha256_hex(text.encode())[:16]})",
+        )
 
 
 def _named(items: list[Mapping[str, Any]]) -> list[tuple[str, Mapping[str, Any]]]:

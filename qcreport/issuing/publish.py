@@ -11,13 +11,16 @@ from qcreport.signing.reading import sealed_revision
 
 LONGEST_STEM = 80
 """Characters of the export's name kept in a report's file name."""
+LONGEST_STEM_BYTES = 160
+"""Bytes of it at most: file systems count bytes, and a temporary name adds to them."""
 
 
 def report_name(number: str, export_name: str) -> str:
     """Return `NUMBER STEM.pdf`; characters that a file name or a shell dislikes become `_`."""
     stem = export_name.rsplit(".", 1)[0]
     safe = "".join(c if c.isalnum() or c in " ._-" else "_" for c in stem).strip(" .")
-    return f"{number} {safe[:LONGEST_STEM].strip() or 'export'}.pdf"
+    short = safe[:LONGEST_STEM].encode("utf-8")[:LONGEST_STEM_BYTES].decode("utf-8", "ignore")
+    return f"{number} {short.strip() or 'export'}.pdf"
 
 
 def publish(folder: Path, name: str, sealed: bytes) -> Path:

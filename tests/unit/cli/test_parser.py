@@ -1,0 +1,53 @@
+"""The words of the command line."""
+
+from __future__ import annotations
+
+import importlib
+
+import pytest
+
+from qcreport.cli.parser import COMMANDS, HELP, build_parser
+from qcreport.errors import UsageError
+
+SMALLEST = {
+    "compare": ["x.xlsx"],
+    "plan propose": ["x.xlsx"],
+    "site new": ["d"],
+    "layout try": ["x.xlsx"],
+    "keys new": ["N", "--for", "person"],
+    "verify": ["r.pdf"],
+    "extract": ["r.pdf", "d"],
+}
+
+
+@pytest.mark.parametrize("command", COMMANDS)
+def test_a_command_leads_to_its_module(command: str) -> None:
+    arguments = build_parser().parse_args([*command.split(), *SMALLEST.get(command, [])])
+    assert arguments.command == command
+    module = importlib.import_module(f"qcreport.cli.commands.{COMMANDS[command]}")
+    assert callable(module.run)
+    assert module.__doc__.startswith(f"`qcreport {command}")
+
+
+@pytest.mark.parametrize("command", COMMANDS)
+def test_the_help_groups_every_command(command: str) -> None:
+    first, *rest = command.split()
+    (line,) = [text for text in HELP.splitlines() if text.startswith(f"  {first} ")]
+    assert all(word in line for word in rest)
+
+
+def test_the_site_comes_from_option_environment_or_folder(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.delenv("QCREPORT_SITE", raising=False)
+    assert build_parser().parse_args(["watch"]).site == "."
+    monkeypatch.setenv("QCREPORT_SITE", "/srv/qc")
+    assert build_parser().parse_args(["watch"]).site == "/srv/qc"
+    assert build_parser().parse_args(["watch", "--site", "/other"]).site == "/other"
+    assert build_parser().parse_args(["verify", "r.pdf"]).site is None, "verify trusts no site by accident"
+
+
+@pytest.mark.parametrize(
+    "words", [[], ["nothing"], ["compare"], ["site"], ["compare", "x", "--rea", "y"], ["keys", "new", "N"]]
+)
+def test_words_that_are_no_command(words: list[str]) -> None:
+    with pytest.raises(UsageError, match="--help"):
+        build_parser().parse_args(words)

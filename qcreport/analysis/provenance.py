@@ -125,7 +125,7 @@ class Provenance:
     others: tuple[OtherRun, ...] = ()
     """Other runs over the same data by the same plan, in order."""
     without_report: int = 0
-    """How often the same data were computed by the same plan without a report."""
+    """Under how many other settings the same data were computed by the same plan without a report."""
     left_out: LeftOut | None = None
     """What a person left out."""
     replaces: Replaces | None = None

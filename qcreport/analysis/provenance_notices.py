@@ -43,7 +43,7 @@ def _runs(records: Provenance, context: Context) -> Iterator[Notice]:
         yield Notice(code="run_of_several", cells=(), text=text)
     if records.without_report:
         times = "once" if records.without_report == 1 else f"{records.without_report} times"
-        text = f"Before this run these data were computed by this plan {times} without a report."
+        text = f"Under other settings these data were computed by this plan {times} without a report."
         yield Notice(code="computed_without_report", cells=(), text=text)
 
 

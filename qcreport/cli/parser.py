@@ -13,6 +13,7 @@ COMMANDS: Final[dict[str, str]] = {
     "compare": "compare",
     "site new": "site_new",
     "config check": "config_check",
+    "plan propose": "plan_propose",
     "layout try": "layout_try",
     "rules show": "rules_show",
     "keys new": "keys_new",
@@ -35,6 +36,7 @@ Setting up
   site new DIR              make a site: folders, settings, rules
   keys new                  make the key that seals, or a person's key
   config check              read all settings and say every fault at once
+  plan propose EXPORT       draft a layout and a plan from an export, for a person to complete
   layout try EXPORT         show what would be read from an export, cell by cell
   rules show [TABLE]        print a decision table
 
@@ -108,7 +110,16 @@ def _compare(commands: Commands) -> None:
     p.add_argument("--plan", metavar="NAME|FILE", help="use this plan, whatever the file's name")
     p.add_argument("--out", metavar="DIR", help="also write NUMBER.pdf and result.json there")
     p.add_argument("--no-report", action="store_true", help="compute and record, seal no report")
-    p.add_argument("--reason", metavar="TEXT", help="why an export is compared again under other settings")
+    p.add_argument(
+        "--leave-out",
+        metavar="CELL",
+        action="append",
+        help='leave out the value in this cell, e.g. "Results!E12"; both answers are printed (repeatable)',
+    )
+    p.add_argument("--replaces", metavar="NUMBER", help="the report that this one replaces")
+    p.add_argument(
+        "--reason", metavar="TEXT", help="why it is compared again, a value left out, a report replaced"
+    )
 
 
 def _setting_up(commands: Commands) -> None:
@@ -127,6 +138,10 @@ def _setting_up(commands: Commands) -> None:
     p.add_argument("--days", type=int, default=730, help="days until the certificate ends (730)")
     config = _group(commands, "config", "Check settings.")
     _add(config, "config check", "Read all settings; say every fault at once.", site=True, json=True)
+    plan = _group(commands, "plan", "Draft plans.")
+    p = _add(plan, "plan propose", "Draft a layout and a plan from an export.", site=True, json=False)
+    p.add_argument("export", metavar="EXPORT", help="an export with values; nothing is recorded")
+    p.add_argument("--out", metavar="DIR", help="a new folder for the drafts (proposed-NAME)")
     layout = _group(commands, "layout", "Try layouts.")
     p = _add(layout, "layout try", "Show what would be read from an export.", site=True, json=True)
     p.add_argument("export", metavar="EXPORT")

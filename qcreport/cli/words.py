@@ -24,7 +24,12 @@ def outcome_lines(outcome: Outcome) -> list[str]:
     """Return what happened, one fact a line, ending with the path to open."""
     if isinstance(outcome, Reported) and not outcome.new:
         already = f"Already answered in {outcome.number}; nothing new written."
-        return [already, f"  {outcome.path}"]
+        lines = [already, f"  {outcome.path}"]
+        if outcome.same_measurements:
+            lines.insert(1, "  another file with the same measurements (same_measurements)")
+        if outcome.since:
+            lines.insert(1, f"  that report is {outcome.since}")
+        return lines
     lines = _answer_lines(json.loads(outcome.result))
     if isinstance(outcome, Reported):
         lines.append(f"  report {outcome.number}, {outcome.pages} pages, sealed; a draft until it is signed")

@@ -5,6 +5,8 @@ from __future__ import annotations
 import json
 
 from qcreport.analysis import analyse, context_from_json
+from qcreport.analysis.analyse import left_out_cells
+from qcreport.analysis.left_out import marked_left_out
 from qcreport.canonical import to_readable_json_bytes
 from qcreport.pipeline.job import Done, Job
 from qcreport.plan import parse_plan
@@ -52,7 +54,7 @@ def compute(job: Job) -> Done:
     rendered = render_job(
         RenderJob(
             result=result,
-            measurements=job.measurements,
+            measurements=marked_left_out(job.measurements, left_out_cells(context)),
             plan=plan,
             context=context,
             attachments=tuple(_attachment(name, data) for name, data in files),

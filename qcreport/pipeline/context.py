@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 import qcreport
 from qcreport.analysis.context import Context
+from qcreport.analysis.provenance import Provenance
 from qcreport.records.run import RunInputs, Slot
 from qcreport.report.templates import TemplateSet
 from qcreport.settings.plans import PlanSettings
@@ -30,9 +31,11 @@ class Moment:
     export_name: str
     """File name as dropped."""
     reason: str
-    """Why it is run again; empty for run 1."""
+    """Why it is run; empty where no reason was needed."""
     key: SigningKey | None
     """The sealing key; None where nothing will be sealed."""
+    provenance: Provenance
+    """What the records add."""
 
 
 def build_context(moment: Moment, slot: Slot) -> Context:
@@ -57,7 +60,7 @@ def build_context(moment: Moment, slot: Slot) -> Context:
         templates_changed=moment.templates.changed,
         run_k=slot.k,
         run_n=slot.n,
-        run_reason=moment.reason,
+        run_reason=moment.reason if moment.provenance.others else "",
         ledger_sequence=slot.ledger_head.sequence,
         ledger_hash=slot.ledger_head.entry_hash,
         seal_subject="" if moment.key is None else moment.key.subject,
@@ -65,4 +68,5 @@ def build_context(moment: Moment, slot: Slot) -> Context:
         pades_level=PADES_LEVEL,
         demonstration=site.demonstration,
         software_version=qcreport.__version__,
+        provenance=moment.provenance,
     )

@@ -8,8 +8,9 @@ from dataclasses import dataclass
 from datetime import datetime
 
 from qcreport.durable import clear_temporaries
+from qcreport.pipeline.issue import Progress
 from qcreport.pipeline.key import load_service_key
-from qcreport.pipeline.pipeline import Pipeline, Progress
+from qcreport.pipeline.pipeline import Pipeline
 from qcreport.pipeline.templates import load_site_templates
 from qcreport.pipeline.workers import Workers
 from qcreport.records.facade import Records
@@ -65,4 +66,9 @@ def opened(
             clock=clock,
             progress=progress,
         )
-        yield Opened(site, records, pipeline)
+        pipeline.watch_settings("qcreport")
+        pipeline.checkpoint()
+        try:
+            yield Opened(site, records, pipeline)
+        finally:
+            pipeline.checkpoint()

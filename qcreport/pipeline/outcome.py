@@ -40,6 +40,10 @@ class Reported:
     """False where the same export, settings and templates were reported before."""
     pages: int
     """Pages of a new report; 0 for an earlier one."""
+    same_measurements: bool = False
+    """True for an earlier report over another file that holds the same measurements."""
+    since: str = ""
+    """What became of an earlier report: `withdrawn`, `replaced by NUMBER`; empty where nothing did."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

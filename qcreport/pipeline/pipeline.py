@@ -7,35 +7,32 @@ ledger (compared) → sealed → published → ledger (sealed, with the measurem
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 from datetime import datetime
-from pathlib import Path
-from zoneinfo import ZoneInfo
 
 from qcreport.analysis import require_answerable
-from qcreport.canonical import sha256_hex, to_readable_json_bytes
-from qcreport.errors import EnvironmentFailedError, ExportRefusedError
-from qcreport.issuing.publish import already_published, publish, report_name
+from qcreport.analysis.left_out import without_cells
+from qcreport.canonical import sha256_hex
+from qcreport.errors import ExportRefusedError, LedgerError
 from qcreport.measurements import MeasurementSet
-from qcreport.pipeline.check_seal import SealToCheck, check_seal
-from qcreport.pipeline.compute import compute
-from qcreport.pipeline.context import Moment, build_context
-from qcreport.pipeline.job import Done, Job
-from qcreport.pipeline.outcome import ComputedOnly, Outcome, Received, Reported
+from qcreport.pipeline.checkpoint import sign_head
+from qcreport.pipeline.context import Moment
+from qcreport.pipeline.issue import Issuer, Progress
+from qcreport.pipeline.outcome import Outcome, Received, Reported
+from qcreport.pipeline.provenance import gather
 from qcreport.pipeline.templates import lab_templates
+from qcreport.pipeline.wish import PLAIN_WISH, Wish, cells_to_leave_out
 from qcreport.pipeline.workers import Workers
-from qcreport.records.chain import Kind
 from qcreport.records.facade import Reading, Records
-from qcreport.records.run import Reservation, Run, RunInputs, Sealing, Slot, run_key
+from qcreport.records.identity import content_digest
+from qcreport.records.run import Run, RunInputs, run_key
+from qcreport.records.store import Survey
 from qcreport.report.templates import TemplateSet
+from qcreport.settings.files import settings_files
 from qcreport.settings.plans import PlanSettings
 from qcreport.settings.site import Site
 from qcreport.signing.keys import SigningKey
-from qcreport.signing.seal import seal
 from qcreport.workbook.read_in_child import read_in_child
-
-SEAL_REASON = "Sealed by the laboratory's service: origin and integrity, no review and no release"
-
-Progress = Callable[[str], None]
 
 
 class Pipeline:
@@ -54,11 +51,19 @@ class Pipeline:
     ) -> None:
         self._site = site
         self._records = records
-        self._workers = workers
         self._templates = templates
         self._key = key
         self._clock = clock
         self._progress = progress
+        self._issuer = Issuer(
+            site=site,
+            records=records,
+            workers=workers,
+            templates=templates,
+            key=key,
+            clock=clock,
+            progress=progress,
+        )
 
     def receive(self, received: Received) -> None:
         """Archive the bytes and record that they came in."""
@@ -71,9 +76,7 @@ class Pipeline:
             actor=received.actor,
         )
 
-    def answer(
-        self, received: Received, settings: PlanSettings, *, reason: str = "", report: bool = True
-    ) -> Outcome:
+    def answer(self, received: Received, settings: PlanSettings, wish: Wish = PLAIN_WISH) -> Outcome:
         """Compare a received export by one plan and issue its report.
 
         Raises
@@ -81,33 +84,61 @@ class Pipeline:
         ExportRefusedError
             Where the export cannot be read or compared by this plan, or was read before under other settings
             and no reason is given for another run.
+        UsageError
+            Where what is wished for cannot be done: a cell without a value, a report that is none.
         """
-        inputs = self._inputs(received, settings)
-        earlier = self._records.run_of_key(run_key(inputs))
-        if earlier is not None and earlier.sealing is not None:
-            return self._earlier(received, earlier, earlier.sealing)
-        others = self._others(received, settings, inputs)
-        if others and not reason:
-            raise _needs_reason(received, settings, others[-1])
+        wish.require_reason()
+        self.watch_settings(received.actor)
+        inputs = self._inputs(received, settings, wish)
+        if not wish.leave_out and (run := self._sealed_run(inputs)) is not None:
+            return self._earlier(received, run)
+        self._require_reason(received, settings, inputs, wish)
         self._progress("reading")
-        measurements = self._read(received, settings)
+        measurements, survey = self._read(received, settings)
+        if wish.leave_out:
+            inputs = self._leave_out(received, settings, inputs, measurements, wish)
+            if (run := self._sealed_run(inputs)) is not None:
+                return self._earlier(received, run)
+        elif (run := self._saved_anew(inputs, settings)) is not None:
+            return self._earlier(received, run, same_measurements=True)
+        others = self._require_reason(received, settings, inputs, wish)
         moment = Moment(
             site=self._site,
             settings=settings,
             templates=self._templates,
             inputs=inputs,
             export_name=received.name,
-            reason=reason,
+            reason=wish.reason.strip(),
             key=self._key,
+            provenance=gather(
+                self._records,
+                settings,
+                inputs=inputs,
+                others=others,
+                measurements=measurements,
+                survey=survey,
+                wish=wish,
+                actor=received.actor,
+                limits=self._site.limits,
+            ),
         )
-        if not report:
-            return self._compute_only(received, moment, measurements, run_number=len(others) + 1)
+        if not wish.report:
+            return self._issuer.compute_only(received, moment, measurements)
         with self._records.issuing(run_key(inputs)):
-            return self._issue(received, moment, measurements)
+            outcome = self._issuer.issue(received, moment, measurements)
+        return self._earlier(received, outcome) if isinstance(outcome, Run) else outcome
+
+    def watch_settings(self, actor: str) -> None:
+        """Record what changed in the settings since they were seen last."""
+        self._records.settings_seen(settings_files(self._site), actor=actor)
+
+    def checkpoint(self) -> None:
+        """Sign the ledger's head, where a key is loaded and anything was written since the last time."""
+        sign_head(self._records, self._key, at=self._clock())
 
     # -- before a number is reserved ------------------------------------------------------------------
 
-    def _inputs(self, received: Received, settings: PlanSettings) -> RunInputs:
+    def _inputs(self, received: Received, settings: PlanSettings, wish: Wish) -> RunInputs:
         """Archive the settings and return the digests of everything that decides the report."""
         for file in (settings.plan_file, settings.layout_file, settings.rules_file):
             self._records.archive.store(file.data)
@@ -120,17 +151,69 @@ class Pipeline:
             layout_sha256=sha256_hex(settings.layout_file.data),
             rules_sha256=sha256_hex(settings.rules_file.data),
             templates=tuple((name, sha256_hex(data)) for name, data in lab_files),
+            replaces=wish.replaces,
         )
 
-    def _others(self, received: Received, settings: PlanSettings, inputs: RunInputs) -> list[Run]:
-        """Return the reports of the same export by the same plan under other settings."""
-        runs = self._records.runs_of_export(received.sha256, settings.plan.name)
-        return [r for r in runs if r.inputs != inputs and r.sealing is not None]
+    def _sealed_run(self, inputs: RunInputs) -> Run | None:
+        run = self._records.run_of_key(run_key(inputs))
+        return run if run is not None and run.sealing is not None else None
 
-    def _earlier(self, received: Received, run: Run, sealing: Sealing) -> Reported:
+    def _require_reason(
+        self, received: Received, settings: PlanSettings, inputs: RunInputs, wish: Wish
+    ) -> list[Run]:
+        """Return the other runs over the same data; where one has a report, this one must be explained."""
+        found = self._records.runs_over_data(received.sha256, settings.plan.name)
+        others = [r for r in found if r.inputs != inputs]
+        sealed = [r for r in others if r.sealing is not None]
+        if sealed and not wish.reason.strip():
+            raise _needs_reason(received, settings, sealed[-1])
+        return others
+
+    def _leave_out(
+        self,
+        received: Received,
+        settings: PlanSettings,
+        inputs: RunInputs,
+        measurements: MeasurementSet,
+        wish: Wish,
+    ) -> RunInputs:
+        """Return the inputs without the values that a person leaves out, once that is recorded."""
+        values = cells_to_leave_out(wish.leave_out, measurements, settings.plan)
+        inputs = replace(inputs, left_out=tuple(cell for cell, _ in values))
+        require_answerable(without_cells(measurements, inputs.left_out), settings.plan)
+        self._records.leave_out(
+            received.claim,
+            run_key=run_key(inputs),
+            values=values,
+            reason=wish.reason.strip(),
+            actor=received.actor,
+        )
+        return inputs
+
+    def _saved_anew(self, inputs: RunInputs, settings: PlanSettings) -> Run | None:
+        """Return the report over other bytes that hold the same measurements under the same settings."""
+        content = self._records.content_of(inputs.export_sha256, inputs.layout_sha256)
+        if content is None or inputs.replaces:
+            return None
+        for run in self._records.runs_over_data(inputs.export_sha256, settings.plan.name):
+            same = replace(run.inputs, export_sha256=inputs.export_sha256) == inputs
+            held = self._records.content_of(run.inputs.export_sha256, run.inputs.layout_sha256)
+            if same and held == content and run.sealing is not None:
+                return run
+        return None
+
+    def _earlier(self, received: Received, run: Run, *, same_measurements: bool = False) -> Reported:
         """Return the report that answers this run key already; nothing new is written but the duplicate."""
+        if run.sealing is None:
+            raise LedgerError(f"{run.number} has no report.")
+        sealing, standing = run.sealing, self._records.standings().get(run.number)
         self._records.duplicate(
-            received.claim, export_sha256=received.sha256, name=received.name, run=run, actor=received.actor
+            received.claim,
+            export_sha256=received.sha256,
+            name=received.name,
+            run=run,
+            actor=received.actor,
+            same_measurements=same_measurements,
         )
         return Reported(
             plan_name=run.plan_name,
@@ -140,9 +223,11 @@ class Pipeline:
             answers=run.answers,
             new=False,
             pages=0,
+            same_measurements=same_measurements,
+            since="" if standing is None else standing.words(),
         )
 
-    def _read(self, received: Received, settings: PlanSettings) -> MeasurementSet:
+    def _read(self, received: Received, settings: PlanSettings) -> tuple[MeasurementSet, Survey]:
         """Read the export in a child, ask whether the plan can be answered, and record the reading."""
         measurements = read_in_child(
             received.data,
@@ -160,6 +245,7 @@ class Pipeline:
             n_measurements=len(measurements.measurements),
             notices=tuple(dict.fromkeys(n.code for n in measurements.notices)),
             survey=self._records.survey(measurements),
+            content=content_digest(measurements),
         )
         self._records.read(
             received.claim,
@@ -168,123 +254,7 @@ class Pipeline:
             reading=reading,
             actor=received.actor,
         )
-        return measurements
-
-    # -- computing, sealing, publishing ---------------------------------------------------------------
-
-    def _compute_only(
-        self, received: Received, moment: Moment, measurements: MeasurementSet, *, run_number: int
-    ) -> ComputedOnly:
-        """Compute without a report: no number is used; the ledger keeps the digest of what was found."""
-        slot = Slot(
-            number="",
-            k=run_number,
-            n=run_number,
-            made_at="",
-            received_at="",
-            ledger_head=self._records.head(),
-        )
-        context = to_readable_json_bytes(build_context(moment, slot).to_json())
-        done = self._work(received, moment, measurements, context, render=False)
-        self._records.archive.store(done.result)
-        facts = {
-            "claim": received.claim,
-            "export_sha256": received.sha256,
-            "plan": moment.settings.plan.name,
-            "result_sha256": sha256_hex(done.result),
-            "answers": done.answers,
-            "report": "none asked for",
-        }
-        self._records.note(Kind.COMPARED, facts, actor=received.actor)
-        return ComputedOnly(plan_name=moment.settings.plan.name, result=done.result, answers=done.answers)
-
-    def _issue(self, received: Received, moment: Moment, measurements: MeasurementSet) -> Reported:
-        reservation = self._reserve(moment)
-        if reservation.already is not None:
-            return self._earlier(received, reservation.run, reservation.already)
-        self._progress(f"computing and rendering {reservation.number}")
-        done = self._work(received, moment, measurements, reservation.context, render=True)
-        self._records.compared(
-            received.claim,
-            number=reservation.number,
-            result=done.result,
-            answers=done.answers,
-            actor=received.actor,
-        )
-        self._progress(f"sealing {reservation.number}")
-        path, report = self._publish(reservation, done, received.name)
-        self._records.sealed(
-            received.claim,
-            number=reservation.number,
-            report_name=path.name,
-            report_sha256=sha256_hex(report),
-            measurements=measurements,
-            actor=received.actor,
-        )
-        return Reported(
-            plan_name=moment.settings.plan.name,
-            number=reservation.number,
-            path=path,
-            result=done.result,
-            answers=done.answers,
-            new=True,
-            pages=done.pages,
-        )
-
-    def _reserve(self, moment: Moment) -> Reservation:
-        year = self._clock().astimezone(ZoneInfo(self._site.time_zone)).year
-
-        def context(slot: Slot) -> bytes:
-            return to_readable_json_bytes(build_context(moment, slot).to_json())
-
-        return self._records.reserve(
-            moment.inputs,
-            export_name=moment.export_name,
-            plan_name=moment.settings.plan.name,
-            year=year,
-            build_context=context,
-            reason=moment.reason,
-        )
-
-    def _work(
-        self,
-        received: Received,
-        moment: Moment,
-        measurements: MeasurementSet,
-        context: bytes,
-        *,
-        render: bool,
-    ) -> Done:
-        job = Job(
-            measurements=measurements,
-            export=received.data,
-            plan=moment.settings.plan_file,
-            layout=moment.settings.layout_file,
-            rules=moment.settings.rules_file,
-            context=context,
-            templates=lab_templates(self._templates),
-            render=render,
-        )
-        return self._workers.run(compute, job)
-
-    def _publish(self, reservation: Reservation, done: Done, export_name: str) -> tuple[Path, bytes]:
-        """Seal and publish, or take up what an interrupted try of the same run published."""
-        folder = self._site.folders.reports
-        name = report_name(reservation.number, export_name)
-        found = already_published(folder, name, dict(done.attachments))
-        if found is not None:
-            return folder / name, found
-        if self._key is None:
-            raise EnvironmentFailedError("No key is loaded, so nothing can be sealed.")
-        report = seal(
-            done.pdf,
-            self._key,
-            at=self._clock(),
-            reason=SEAL_REASON,
-            location=self._site.seal.location,
-        )
-        self._workers.run(check_seal, SealToCheck(report, self._key.certificate_pem(), self._clock()))
-        return publish(folder, name, report), report
+        return measurements, reading.survey
 
 
 def _needs_reason(received: Received, settings: PlanSettings, run: Run) -> ExportRefusedError:

@@ -9,7 +9,6 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from contextlib import AbstractContextManager
-from dataclasses import dataclass
 from pathlib import Path
 
 from sqlalchemy import Connection, insert, select
@@ -29,42 +28,13 @@ from qcreport.records.imports import Imports
 from qcreport.records.ledger import Step
 from qcreport.records.lock import exclusive
 from qcreport.records.moments import Clock
+from qcreport.records.reading import Reading, Receipt
 from qcreport.records.run import Answers, Reservation, Run, RunInputs, Slot, run_key
 from qcreport.records.same_data import note_content
 from qcreport.records.store import Survey
 from qcreport.records.tables import EXPORT, REFUSAL, TRIAL
 
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Receipt:
-    """That bytes were received, and what is known of them."""
-
-    received_at: str
-    """UTC time at which these bytes were first received."""
-    first_name: str
-    """The name they had then."""
-    runs: tuple[Run, ...]
-    """Runs over these bytes so far, reserved and sealed."""
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Reading:
-    """What a reading of an export found, for the ledger."""
-
-    plan_name: str
-    """The plan that asked for it."""
-    layout_name: str
-    """The layout it was read by."""
-    layout_sha256: str
-    """Digest of the layout file."""
-    n_measurements: int
-    """Measurements read."""
-    notices: tuple[str, ...]
-    """Notice codes, each once."""
-    survey: Survey
-    """What the store held of it."""
-    content: str | None = None
-    """Digest of what it holds; None where exports are not joined."""
+__all__ = ["Reading", "Receipt", "Records"]
 
 
 class Records(Decisions, Imports):
@@ -111,7 +81,16 @@ class Records(Decisions, Imports):
                 runs=runs.of_export(connection, export_sha256),
             )
 
-    def duplicate(self, claim: str, *, export_sha256: str, name: str, run: Run, actor: str) -> Entry:
+    def duplicate(
+        self,
+        claim: str,
+        *,
+        export_sha256: str,
+        name: str,
+        run: Run,
+        actor: str,
+        same_measurements: bool = False,
+    ) -> Entry:
         """Record that an export was answered before and nothing new is written.
 
         Where it was this very claim that sealed the run, and only its end was lost in a kill, that entry is
@@ -121,8 +100,10 @@ class Records(Decisions, Imports):
             own = ledger.entry_of(connection, Kind.SEALED, Step(claim=claim, subject=run.number))
         if own is not None:
             return own
-        facts = {"claim": claim, "name": name, "export_sha256": export_sha256}
+        facts: dict[str, object] = {"claim": claim, "name": name, "export_sha256": export_sha256}
         facts |= {"plan": run.plan_name, "number": run.number}
+        if same_measurements:  # other bytes, nothing else: the workbook was saved anew
+            facts["same_measurements"] = True
         return self.note(Kind.DUPLICATE, facts, actor=actor, step=Step(claim=claim, subject=run.number))
 
     def refuse(
@@ -239,16 +220,17 @@ class Records(Decisions, Imports):
             return entry
 
     def computed_only(
-        self, claim: str, *, plan_name: str, export_sha256: str, facts: Facts, actor: str
+        self, claim: str, inputs: RunInputs, *, plan_name: str, facts: Facts, actor: str
     ) -> Entry:
-        """Record a computation without a report: it uses no number; later reports tell of it."""
+        """Record a computation without a report: it uses no number; other runs tell of it."""
         with self._moment() as (connection, now):
-            step = Step(claim=claim, subject=plan_name)
             before = ledger.head(connection)
+            step = Step(claim=claim, subject=plan_name)
             entry = self._append(connection, now, Kind.COMPARED, facts, actor, step)
             if entry.sequence > before.sequence:
-                row = {"sequence": entry.sequence, "export_sha256": export_sha256}
-                connection.execute(insert(TRIAL).values(row | {"plan_name": clean_text(plan_name)}))
+                row = {"sequence": entry.sequence, "export_sha256": inputs.export_sha256}
+                row |= {"plan_name": clean_text(plan_name), "run_key": run_key(inputs)}
+                connection.execute(insert(TRIAL).values(row))
             return entry
 
     def sealed(

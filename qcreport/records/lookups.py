@@ -2,13 +2,15 @@
 
 from __future__ import annotations
 
-from qcreport.measurements import MeasurementSet
+from collections.abc import Sequence
+
+from qcreport.measurements import Measurement, MeasurementSet
 from qcreport.records import ledger, listing, runs, same_data, store
 from qcreport.records.archive import Archive
 from qcreport.records.chain import Entry, Head, Kind
 from qcreport.records.database import Database
 from qcreport.records.listing import EVERYTHING, OpenRefusal, ReportRow, Wanted
-from qcreport.records.run import Run
+from qcreport.records.run import Run, RunInputs
 from qcreport.records.standing import Standing, standings
 from qcreport.records.store import Survey
 
@@ -57,10 +59,10 @@ class Lookups:
         with self.database.read() as connection:
             return same_data.runs_over(connection, export_sha256, plan_name)
 
-    def trials_over_data(self, export_sha256: str, plan_name: str) -> int:
-        """Return how often the same data were computed by a plan without a report."""
+    def trials_over_data(self, inputs: RunInputs, plan_name: str) -> int:
+        """Return under how many other settings the same data were computed by a plan without a report."""
         with self.database.read() as connection:
-            return same_data.trials_over(connection, export_sha256, plan_name)
+            return same_data.trials_over(connection, inputs, plan_name)
 
     def content_of(self, export_sha256: str, layout_sha256: str) -> str | None:
         """Return the digest of what an export holds as a layout reads it, or None."""

@@ -227,7 +227,8 @@ _CONTENTS = (
     CREATE TABLE trial (
         sequence INTEGER NOT NULL PRIMARY KEY REFERENCES ledger (sequence),
         export_sha256 TEXT NOT NULL REFERENCES export (sha256),
-        plan_name TEXT NOT NULL
+        plan_name TEXT NOT NULL,
+        run_key TEXT NOT NULL
     )
     """,
     "CREATE INDEX trial_by_export ON trial (export_sha256)",

@@ -6,7 +6,7 @@ from sqlalchemy import ColumnElement, Connection, func, insert, select
 
 from qcreport.records import runs
 from qcreport.records.facts import clean_text
-from qcreport.records.run import Run
+from qcreport.records.run import Run, RunInputs, run_key
 from qcreport.records.tables import CONTENT, RUN, TRIAL
 
 
@@ -41,10 +41,12 @@ def next_k(connection: Connection, export_sha256: str, plan_name: str) -> int:
     return int(connection.execute(query).scalar_one()) + 1
 
 
-def trials_over(connection: Connection, export_sha256: str, plan_name: str) -> int:
-    """Return how often the same data were computed by a plan without a report."""
-    query = select(func.count()).where(
-        TRIAL.c.plan_name == clean_text(plan_name), _same(TRIAL.c.export_sha256, export_sha256)
+def trials_over(connection: Connection, inputs: RunInputs, plan_name: str) -> int:
+    """Return under how many other settings the same data were computed by a plan without a report."""
+    query = select(func.count(TRIAL.c.run_key.distinct())).where(
+        TRIAL.c.plan_name == clean_text(plan_name),
+        TRIAL.c.run_key != run_key(inputs),
+        _same(TRIAL.c.export_sha256, inputs.export_sha256),
     )
     return int(connection.execute(query).scalar_one())
 

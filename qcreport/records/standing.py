@@ -49,6 +49,10 @@ class Standing:
     replaced_by: str
     """Number of the report that replaces it; empty where none does."""
 
+    def words(self) -> str:
+        """Return the state in words."""
+        return f"replaced by {self.replaced_by}" if self.replaced_by else str(self.state)
+
 
 def standings(connection: Connection) -> dict[str, Standing]:
     """Return the standing of every report about which more than the seal is recorded."""

@@ -131,6 +131,7 @@ TRIAL = Table(
     Column("sequence", Integer, primary_key=True),
     Column("export_sha256", String, nullable=False),
     Column("plan_name", String, nullable=False),
+    Column("run_key", String, nullable=False),
 )
 
 SETTING_FILE = Table(

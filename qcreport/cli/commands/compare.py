@@ -18,6 +18,7 @@ from qcreport.errors import EnvironmentFailedError, ExportRefusedError, UsageErr
 from qcreport.pipeline.choose_plans import fitting_plans
 from qcreport.pipeline.opened import Opened, opened
 from qcreport.pipeline.outcome import Outcome, Received, Reported
+from qcreport.pipeline.wish import Wish
 from qcreport.settings import PlanSettings, Site, find_plan, load_plans, load_site
 from qcreport.workbook.layout_try import layout_try_json
 
@@ -26,6 +27,7 @@ def run(arguments: argparse.Namespace) -> int:
     """Compare one export by every plan that fits; it stays where it is, refused or not."""
     site = load_site(Path(arguments.site))
     received = _received(Path(arguments.export), site)
+    _wish(arguments).require_reason()
     with opened(site, now, workers=1, seals=not arguments.no_report, progress=_progress) as work:
         if len(received.data) > site.limits.max_file_bytes:
             return _refused(work, received, _too_large(Path(arguments.export), site), arguments)
@@ -104,13 +106,20 @@ def _answer(
     work: Opened, received: Received, settings: PlanSettings, arguments: argparse.Namespace
 ) -> Outcome:
     try:
-        return work.pipeline.answer(
-            received, settings, reason=arguments.reason or "", report=not arguments.no_report
-        )
+        return work.pipeline.answer(received, settings, _wish(arguments))
     except ExportRefusedError as error:
         if error.code == "already_read":
             raise UsageError(f'{error.found} Every further run must be explained: --reason "…".') from None
         raise
+
+
+def _wish(arguments: argparse.Namespace) -> Wish:
+    return Wish(
+        reason=arguments.reason or "",
+        leave_out=tuple(arguments.leave_out or ()),
+        replaces=arguments.replaces or "",
+        report=not arguments.no_report,
+    )
 
 
 def _refused(

@@ -9,7 +9,7 @@ import signal
 import subprocess
 import sys
 import threading
-from typing import IO
+from typing import IO, Any, Protocol, TypeVar
 
 from qcreport.canonical import sha256_hex
 from qcreport.errors import ExportRefusedError
@@ -20,6 +20,17 @@ from qcreport.workbook.refusals import damaged, refused
 from qcreport.workbook.wire import MAX_LINE, Decoder, WireError, limits_as_json
 
 _MODULE = "qcreport.workbook.reader_child"
+_Result = TypeVar("_Result", covariant=True)
+
+
+class Answer(Protocol[_Result]):
+    """Takes the lines of a child, checks them strictly, and builds the result."""
+
+    def take(self, line: bytes) -> None:
+        """Take one line; a WireError where the child would not write it, a refusal where it is one."""
+
+    def finished(self) -> _Result:
+        """Return the whole; a WireError where it is incomplete."""
 
 
 def read_in_child(
@@ -62,17 +73,41 @@ def read_in_child(
     """
     limits = limits if limits is not None else Limits()
     parse_layout(layout_bytes, layout_file)
+    header = {
+        "name": name,
+        "layout_file": layout_file,
+        "layout_text": layout_bytes.decode("utf-8-sig"),
+        "limits": limits_as_json(limits),
+        "second_look": second_look,
+    }
+    decoder = Decoder(name=name, sha256=sha256_hex(data), limits=limits)
+    return ask_child(_MODULE, header, data, decoder, limits=limits, name=name)
+
+
+def ask_child(
+    module: str, header: dict[str, Any], data: bytes, answer: Answer[_Result], *, limits: Limits, name: str
+) -> _Result:
+    """Return what a bounded child process makes of an export.
+
+    Parameters
+    ----------
+    module : str
+        The child's module.
+    header : dict
+        The request, sent as one JSON line before the bytes.
+    data : bytes
+        The file as dropped.
+    answer : Answer
+        Takes what the child writes.
+    limits : Limits
+        Bounds of the child.
+    name : str
+        The file's name, for refusals.
+    """
     try:
         _refuse_oversized(data, limits)
-        header = {
-            "name": name,
-            "layout_file": layout_file,
-            "layout_text": layout_bytes.decode("utf-8-sig"),
-            "limits": limits_as_json(limits),
-            "second_look": second_look,
-        }
         request = json.dumps(header).encode("ascii") + b"\n"
-        return _ask(request, data, Decoder(name=name, sha256=sha256_hex(data), limits=limits), limits)
+        return _ask([sys.executable, "-I", "-m", module], request, data, answer, limits)
     except ExportRefusedError as refusal:
         refusal.file = name
         raise
@@ -89,9 +124,9 @@ def _refuse_oversized(data: bytes, limits: Limits) -> None:
         )
 
 
-def _ask(request: bytes, data: bytes, decoder: Decoder, limits: Limits) -> MeasurementSet:
+def _ask(command: list[str], request: bytes, data: bytes, answer: Answer[_Result], limits: Limits) -> _Result:
     child = subprocess.Popen(  # noqa: S603 - our own module, no shell
-        [sys.executable, "-I", "-m", _MODULE],
+        command,
         stdin=subprocess.PIPE,
         stdout=subprocess.PIPE,
         stderr=subprocess.DEVNULL,
@@ -115,9 +150,9 @@ def _ask(request: bytes, data: bytes, decoder: Decoder, limits: Limits) -> Measu
         with contextlib.suppress(BrokenPipeError), child.stdin as pipe:
             pipe.write(request)
             pipe.write(data)
-        _take_lines(child.stdout, decoder, limits)
+        _take_lines(child.stdout, answer, limits)
         child.wait()
-        result = decoder.finished()
+        result = answer.finished()
     except WireError:
         fault = True
     finally:
@@ -133,13 +168,13 @@ def _ask(request: bytes, data: bytes, decoder: Decoder, limits: Limits) -> Measu
     return result
 
 
-def _take_lines(pipe: IO[bytes], decoder: Decoder, limits: Limits) -> None:
+def _take_lines(pipe: IO[bytes], answer: Answer[Any], limits: Limits) -> None:
     taken = 0
     while line := pipe.readline(MAX_LINE + 1):
         taken += len(line)
         if len(line) > MAX_LINE or taken > limits.max_answer_bytes:
             raise WireError("the answer is too long")
-        decoder.take(line)
+        answer.take(line)
 
 
 def kill_group(child: subprocess.Popen[bytes]) -> None:

@@ -42,7 +42,10 @@ def looks_like_unit(text: str) -> bool:
         return False
     if plain in _WHOLE:
         return True
-    return all(_known_factor(factor) for factor in re.split(r"[./]", plain))
+    first, *others = re.split(r"[./]", plain)
+    if " " not in text:  # `N/25mm`, and not `7 d / 23 C`
+        others = [factor.lstrip("0123456789") or factor for factor in others]
+    return all(_known_factor(factor) for factor in (first, *others))
 
 
 def _known_factor(text: str) -> bool:

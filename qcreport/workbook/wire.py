@@ -75,13 +75,7 @@ class Decoder:
         """Take one line; raises ExportRefusedError where it is a refusal."""
         if self._result is not None:
             raise WireError("a line after the end")
-        try:
-            record = json.loads(line, parse_constant=_no_constant)
-        except (ValueError, RecursionError):
-            raise WireError("no JSON") from None
-        if not isinstance(record, list) or not record:
-            raise WireError("no record")
-        kind, *rest = record
+        kind, *rest = decode_line(line)
         if kind == "measurement":
             self._measurement(rest)
         elif kind == "notice":
@@ -89,7 +83,7 @@ class Decoder:
         elif kind == "end":
             self._end(rest)
         elif kind == "refused":
-            raise self._refusal(rest)
+            raise decode_refusal(rest, name=self._name)
         else:
             raise WireError("an unknown record")
 
@@ -150,18 +144,31 @@ class Decoder:
             notices=tuple(self._notices),
         )
 
-    def _refusal(self, rest: list[Any]) -> ExportRefusedError:
-        if len(rest) != 6 or rest[0] not in REFUSAL_CODES:
-            raise WireError("a refusal")
-        return ExportRefusedError(
-            rest[0],
-            file=self._name,
-            where=_text(rest[1]),
-            found=_text(rest[2]),
-            expected=_text(rest[3]),
-            next_step=_text(rest[4]),
-            cells=_cells(rest[5]),
-        )
+
+def decode_line(line: bytes) -> list[Any]:
+    """Return the record of a line: an array that is not empty."""
+    try:
+        record = json.loads(line, parse_constant=_no_constant)
+    except (ValueError, RecursionError):
+        raise WireError("no JSON") from None
+    if not isinstance(record, list) or not record:
+        raise WireError("no record")
+    return record
+
+
+def decode_refusal(record: list[Any], *, name: str) -> ExportRefusedError:
+    """Return the refusal that a line holds after its kind."""
+    if len(record) != 6 or record[0] not in REFUSAL_CODES:
+        raise WireError("a refusal")
+    return ExportRefusedError(
+        record[0],
+        file=name,
+        where=_text(record[1]),
+        found=_text(record[2]),
+        expected=_text(record[3]),
+        next_step=_text(record[4]),
+        cells=_cells(record[5]),
+    )
 
 
 def _no_constant(name: str) -> float:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from qcreport.analysis.comparable import Comparable
+from qcreport.analysis.contrasts import estimated_contrasts
 from qcreport.analysis.description import letters, normality, overall_effect, pair_effects
 from qcreport.analysis.flags import flag
 from qcreport.analysis.left_out import groups_without, units_left_out, with_left_out
@@ -33,6 +34,7 @@ def characteristic_result(
     comparison, c = outcome.comparison, question.characteristic
     pairs = () if comparison is None else comparison.pairs
     table = _variance_table(outcome.ready)
+    contrasts, missing = estimated_contrasts(outcome, question)
     result = CharacteristicResult(
         name=c.name,
         title=c.title,
@@ -43,6 +45,7 @@ def characteristic_result(
         direction=c.direction.value,
         lower_limit=c.lower_limit,
         upper_limit=c.upper_limit,
+        known_scatter=c.scatter,
         independent_unit=question.plan.independent_unit.value,
         reference=question.plan.reference,
         groups=tuple(
@@ -65,11 +68,12 @@ def characteristic_result(
         letters=letters(outcome.ready, pairs, outcome.procedure),
         pair_effects=pair_effects(outcome.ready, pairs, outcome.procedure),
         overall_effect=overall_effect(outcome.ready),
+        contrasts=contrasts,
         flagged=flag(groups, outcome, question),
         answer=outcome.answer,
         left_out=with_left_out(outcome, measurements, question),
     )
-    return result, () if comparison is None else comparison.notices
+    return result, missing if comparison is None else (*comparison.notices, *missing)
 
 
 def _all_within(outcome: Outcome) -> bool | None:

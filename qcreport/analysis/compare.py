@@ -7,24 +7,19 @@ from dataclasses import dataclass, replace
 from typing import cast
 
 from qcreport.analysis.comparable import Comparable, all_equal
+from qcreport.analysis.planning import OPEN_ANSWERS, Margin, Planning, df_of
 from qcreport.analysis.procedures import on_means, run_procedure
 from qcreport.analysis.ranks import compare_by_ranks
 from qcreport.analysis.result import PairResult
 from qcreport.measurements import Notice
-from qcreport.plan.model import POOLED, RANKS, CharacteristicPlan, Scale
+from qcreport.plan.model import POOLED, RANKS, CharacteristicPlan, Direction, Scale
 from qcreport.stats.comparison import PairwiseComparison, PosthocResult
-from qcreport.stats.detectable import Procedure, detectable_difference, sample_size_for
 from qcreport.stats.equivalence import all_within_margin, judge
+from qcreport.stats.sizes import Design, Procedure
 from qcreport.stats.summary import GroupSummary, with_floored_variance
-from qcreport.stats.unequal import welch_pair
-
-Margin = tuple[float | None, float | None]
-"""Below (negative) and above (positive), on the scale of the comparison."""
 
 _LARGEST_LOGARITHM = 700.0
 """Its exponential is the last that is safely a number."""
-
-OPEN_ANSWERS = frozenset({"different", "not_settled"})
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -78,10 +73,19 @@ def compare(
         direction=characteristic.direction,
     )
     by_label = {s.label: s for s in summaries}
-    needed = (
-        _Needed(procedure=procedure, n_groups=len(summaries), alpha=alpha, margin=margin) if sizes else None
+    planning = Planning(
+        design=Design(
+            procedure=cast(Procedure, procedure),
+            n_groups=len(summaries),
+            alpha=alpha,
+            two_sided=ready.reference is None or characteristic.direction is Direction.BOTH,
+        ),
+        margin=margin,
+        groups=by_label,
+        scatter=characteristic.scatter,
     )
-    pairs = tuple(_pair(c, by_label, margin, scale, needed) for c in posthoc.comparisons)
+    pairs = tuple(_pair(c, planning, scale, sizes=sizes) for c in posthoc.comparisons)
+    notices += _known_scatter(characteristic, scale)
     return Comparison(
         posthoc=posthoc,
         summaries=summaries,
@@ -104,8 +108,8 @@ def _by_ranks(
         replace(
             p,
             difference=_difference(p.difference, scale),
-            lower=_back(p.lower, scale),
-            upper=_back(p.upper, scale),
+            lower=back_from_scale(p.lower, scale),
+            upper=back_from_scale(p.upper, scale),
         )
         for p in found.pairs
     )
@@ -151,80 +155,24 @@ def _floored(ready: Comparable, scale: Scale) -> tuple[tuple[GroupSummary, ...],
     return tuple(summaries), tuple(notices)
 
 
-def _df(comparison: PairwiseComparison, by_label: dict[str, GroupSummary]) -> float:
-    """Return the pair's degrees of freedom; Welch–Satterthwaite where the procedure itself has none."""
-    if comparison.df is not None:
-        return comparison.df
-    return welch_pair(by_label[comparison.first], by_label[comparison.second]).df
-
-
 def _all_within(
     posthoc: PosthocResult, by_label: dict[str, GroupSummary], margin: Margin, alpha: float
 ) -> bool | None:
     """Return whether two one-sided tests put every pair within the margin; None where none is set."""
     if margin == (None, None):
         return None
-    own_df = [_df(c, by_label) for c in posthoc.comparisons]
+    own_df = [df_of(c, by_label) for c in posthoc.comparisons]
     within = all_within_margin(
         posthoc.comparisons, alpha=alpha, margin_below=margin[0], margin_above=margin[1], own_df=own_df
     )
     return within.all_within
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class _Needed:
-    """What decides how many results a group would settle an open pair."""
-
-    procedure: str
-    n_groups: int
-    alpha: float
-    margin: Margin
-
-    def results_a_group(
-        self, pair: PairwiseComparison, first: GroupSummary, second: GroupSummary
-    ) -> int | None:
-        """Return about how many results a group would put the whole interval on one side of the margin.
-
-        The difference and the scatter are taken as seen; None where no number does: the difference lies on
-        the margin itself, no margin is set, or an interval open to one side reaches across it for ever.
-        """
-        below, above = self.margin
-        if pair.lower is None:
-            ends = [m for m in (below,) if m is not None and pair.difference < m]
-        elif pair.upper is None:
-            ends = [m for m in (above,) if m is not None and pair.difference > m]
-        else:
-            ends = [m for m in (below, above) if m is not None]
-        distances = [abs(pair.difference - m) for m in ends]
-        if not distances or min(distances) == 0.0:
-            return None
-        return sample_size_for(
-            procedure=cast(Procedure, self.procedure),
-            n_groups=self.n_groups,
-            variance=0.5 * (first.variance + second.variance),
-            margin=min(distances),
-            alpha=self.alpha,
-        )
-
-
-def _pair(
-    comparison: PairwiseComparison,
-    by_label: dict[str, GroupSummary],
-    margin: Margin,
-    scale: Scale,
-    needed: _Needed | None,
-) -> PairResult:
-    answer = judge(comparison.lower, comparison.upper, margin[0], margin[1])
-    detectable = None
-    if comparison.se is not None and comparison.critical_value is not None:
-        detectable = detectable_difference(
-            comparison.se, _df(comparison, by_label), comparison.critical_value
-        )
-    settled_by = None
-    if needed is not None and answer in OPEN_ANSWERS:
-        settled_by = needed.results_a_group(
-            comparison, by_label[comparison.first], by_label[comparison.second]
-        )
+def _pair(comparison: PairwiseComparison, planning: Planning, scale: Scale, *, sizes: bool) -> PairResult:
+    below, above = planning.margin
+    answer = judge(comparison.lower, comparison.upper, below, above)
+    detectable = planning.detectable(comparison) if sizes else None
+    limits = None if detectable is None else planning.detectable_limits(comparison, detectable)
     return PairResult(
         first=comparison.first,
         second=comparison.second,
@@ -234,21 +182,36 @@ def _pair(
         df=comparison.df,
         critical_value=comparison.critical_value,
         p=comparison.p,
-        lower=_back(comparison.lower, scale),
-        upper=_back(comparison.upper, scale),
-        detectable=_back(detectable, scale),
-        needed_n=settled_by,
+        lower=back_from_scale(comparison.lower, scale),
+        upper=back_from_scale(comparison.upper, scale),
+        detectable=back_from_scale(detectable, scale),
+        detectable_limits=None
+        if limits is None
+        else (back_from_scale(limits[0], scale), back_from_scale(limits[1], scale)),
+        needed_n=planning.needed_n(comparison) if sizes and answer in OPEN_ANSWERS else None,
         answer=answer,
     )
 
 
+def _known_scatter(characteristic: CharacteristicPlan, scale: Scale) -> tuple[Notice, ...]:
+    """Say that what can be detected rests on the plan's scatter and not on this export's."""
+    if characteristic.scatter is None:
+        return ()
+    unit = "natural logarithms" if scale is Scale.LOG else characteristic.unit
+    text = (
+        f"{characteristic.title}: the detectable differences rest on the scatter that the plan gives "
+        f"(standard deviation {characteristic.scatter:g} {unit}), not on the scatter seen in this export."
+    )
+    return (Notice(code="known_scatter_used", cells=(), text=text),)
+
+
 def _difference(value: float, scale: Scale) -> float:
     """Return a pair's difference as reported; not a number where no double holds it."""
-    back = _back(value, scale)
+    back = back_from_scale(value, scale)
     return math.nan if back is None else back
 
 
-def _back(value: float | None, scale: Scale) -> float | None:
+def back_from_scale(value: float | None, scale: Scale) -> float | None:
     """Return a difference as reported: a ratio of geometric means on the log scale.
 
     A ratio beyond double precision is None, as an open end is.

@@ -156,6 +156,7 @@ def _pair(
         lower=comparison.lower,
         upper=comparison.upper,
         detectable=None,
+        detectable_limits=None,
         needed_n=None,
         answer=answer,
     )

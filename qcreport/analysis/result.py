@@ -8,6 +8,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any
 
+from qcreport.analysis.contrast_result import ContrastResult
 from qcreport.analysis.left_out_result import LeftOutResult
 from qcreport.analysis.provenance import NO_PROVENANCE, Provenance
 from qcreport.canonical import finite_or_none
@@ -19,6 +20,7 @@ __all__ = [
     "ChangedAnswer",
     "CharacteristicResult",
     "Check",
+    "ContrastResult",
     "FactEvidence",
     "Flagged",
     "GroupResult",
@@ -214,6 +216,8 @@ class PairResult:
     """Difference that would be shown with probability 0.80 by this design, in the unit."""
     needed_n: int | None
     """Results a group that would settle an open pair, if the scatter is as seen; None where settled."""
+    detectable_limits: tuple[float | None, float | None] | None = None
+    """The same at the 90 % limits of the scatter seen here; None where the plan gives the scatter."""
     answer: str
     """Code of the answer."""
 
@@ -233,6 +237,11 @@ class PairResult:
             "detectable": finite_or_none(self.detectable),
             "needed_n": self.needed_n,
             "answer": self.answer,
+            "detectable_limits": (
+                None
+                if self.detectable_limits is None
+                else [finite_or_none(end) for end in self.detectable_limits]
+            ),
         }
 
 
@@ -322,6 +331,8 @@ class CharacteristicResult:
     """Specification limit, for orientation."""
     independent_unit: str
     """reading, sample or batch."""
+    known_scatter: float | None = None
+    """Standard deviation of a result by the plan, which `detectable` rests on; None: as seen here."""
     reference: str | None
     """Label of the reference group, or None for every pair."""
     groups: tuple[GroupResult, ...]
@@ -362,6 +373,8 @@ class CharacteristicResult:
     """Omega squared; None where not given."""
     flagged: tuple[Flagged, ...]
     """Outlying values."""
+    contrasts: tuple[ContrastResult, ...] = ()
+    """The plan's contrasts that could be estimated, plan order."""
     answer: str
     """Code of the most serious pair."""
     left_out: LeftOutResult | None = None
@@ -385,6 +398,7 @@ class CharacteristicResult:
             "upper_limit": finite_or_none(self.upper_limit),
             "independent_unit": self.independent_unit,
             "reference": self.reference,
+            "known_scatter": finite_or_none(self.known_scatter),
             "groups": [g.to_json() for g in self.groups],
             "not_compared": [g.to_json() for g in self.not_compared],
             "checks": [c.to_json() for c in self.checks],
@@ -408,6 +422,7 @@ class CharacteristicResult:
             "sensitivity": None if self.sensitivity is None else self.sensitivity.to_json(),
             "flagged": [f.to_json() for f in self.flagged],
             "answer": self.answer,
+            "contrasts": [c.to_json() for c in self.contrasts],
             "left_out": None if self.left_out is None else self.left_out.to_json(),
         }
 

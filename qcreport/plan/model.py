@@ -123,6 +123,19 @@ class CharacteristicPlan:
     """Specification limit, for orientation."""
     upper_limit: float | None
     """Specification limit, for orientation."""
+    scatter: float | None = None
+    """Known standard deviation of a result of the independent unit, in the unit (of natural logarithms on the
+    log scale); what can be detected rests on it. None: on the scatter of the export."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ContrastPlan:
+    """A weighted sum of group means that the plan asks about."""
+
+    name: str
+    """As the report prints it, unique in the plan."""
+    weights: tuple[tuple[str, float], ...]
+    """(group label, weight), no weight 0, summing to 0."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -165,3 +178,5 @@ class ComparisonPlan:
     """The declaration, if any."""
     characteristics: tuple[CharacteristicPlan, ...]
     """In the order printed."""
+    contrasts: tuple[ContrastPlan, ...] = ()
+    """Asked of every characteristic, in the order printed."""

@@ -7,6 +7,7 @@ import re
 from collections.abc import Sequence
 from typing import Final
 
+from qcreport.plan.contrasts import parse_contrasts
 from qcreport.plan.model import (
     BY_RULES,
     PROCEDURES,
@@ -73,6 +74,7 @@ def parse_plan(data: bytes, file: str) -> ComparisonPlan:
         smallest_group=comparison.integer("smallest_group", 3, minimum=2),
         spread=_spread(top),
         characteristics=characteristics,
+        contrasts=parse_contrasts(top.tables("contrast")),
     )
     _cross_checks(top, comparison, plan)
     _named_once(readers, characteristics)
@@ -126,6 +128,7 @@ def _characteristic(table: TableReader, scale: Scale) -> CharacteristicPlan:
         direction=direction,
         lower_limit=lower,
         upper_limit=upper,
+        scatter=table.number("scatter", None, above=0.0),
     )
 
 

@@ -10,11 +10,11 @@ from qcreport.errors import DegenerateDataError
 from qcreport.stats.comparison import require_alpha
 from qcreport.stats.distributions.student import f_upper, f_upper_quantile
 from qcreport.stats.one_way import anova
-from qcreport.stats.summary import GroupSummary, mean_difference
+from qcreport.stats.summary import GroupSummary, mean_difference, require_groups
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class ContrastResult:
+class ContrastEstimate:
     """One contrast, results in the unit u."""
 
     coefficients: tuple[float, ...]
@@ -26,7 +26,7 @@ class ContrastResult:
     statistic: float
     """estimate / se, signed, dimensionless."""
     df: float
-    """Degrees of freedom within groups."""
+    """Degrees of freedom of the standard error."""
     critical_value: float
     """sqrt((k - 1) F(alpha; k - 1, df)), dimensionless."""
     p: float
@@ -39,7 +39,7 @@ class ContrastResult:
 
 def scheffe(
     groups: Sequence[GroupSummary], contrasts: Sequence[Sequence[float]], *, alpha: float
-) -> tuple[ContrastResult, ...]:
+) -> tuple[ContrastEstimate, ...]:
     """Estimate contrasts of means with intervals that hold for all contrasts together (Scheffé).
 
     Assumes independent, normal results with one variance.
@@ -55,7 +55,7 @@ def scheffe(
 
     Returns
     -------
-    tuple of ContrastResult
+    tuple of ContrastEstimate
         Input order.
 
     Raises
@@ -69,30 +69,90 @@ def scheffe(
     """
     require_alpha(alpha)
     overall = anova(groups)
-    scale = overall.df_between
-    critical = math.sqrt(scale * f_upper_quantile(alpha, scale, overall.df_within))
-    shifts = [mean_difference(group, groups[0]) for group in groups]
-    results = []
-    for row in contrasts:
-        _require_contrast(row, len(groups))
-        estimate = math.fsum(c * shift for c, shift in zip(row, shifts, strict=True))
-        variance = math.fsum(c * c / group.n for c, group in zip(row, groups, strict=True))
-        se = math.sqrt(overall.ms_within) * math.sqrt(variance)
-        statistic = estimate / se
-        results.append(
-            ContrastResult(
-                coefficients=tuple(row),
-                estimate=estimate,
-                se=se,
-                statistic=statistic,
-                df=overall.df_within,
-                critical_value=critical,
-                p=f_upper(statistic * statistic / scale, scale, overall.df_within),
-                lower=estimate - critical * se,
-                upper=estimate + critical * se,
-            )
+    sd = math.sqrt(overall.ms_within)
+    _require_contrasts(contrasts, len(groups))
+    return tuple(
+        _estimate(
+            groups,
+            row,
+            alpha,
+            math.hypot(*[c * sd / math.sqrt(g.n) for c, g in _used(row, groups)]),
+            overall.df_within,
         )
-    return tuple(results)
+        for row in contrasts
+    )
+
+
+def brown_forsythe_contrasts(
+    groups: Sequence[GroupSummary], contrasts: Sequence[Sequence[float]], *, alpha: float
+) -> tuple[ContrastEstimate, ...]:
+    """Estimate contrasts of means when variances may differ (Brown & Forsythe's form of Scheffé's method).
+
+    Each group's own variance enters the standard error, with Satterthwaite's degrees of freedom.
+
+    Parameters
+    ----------
+    groups, contrasts, alpha
+        As for `scheffe`; each group with n >= 2 and variance > 0.
+
+    Returns
+    -------
+    tuple of ContrastEstimate
+        Input order.
+
+    Raises
+    ------
+    TooFewObservationsError, DegenerateDataError
+        As for `games_howell`; a row of another length, or one that is no contrast.
+
+    References
+    ----------
+    .. [1] Brown & Forsythe (1974), Biometrics 30(4), 719-724. doi:10.2307/2529238
+    """
+    require_alpha(alpha)
+    require_groups(groups, smallest_n=2, scatter=True)
+    _require_contrasts(contrasts, len(groups))
+    estimates = []
+    for row in contrasts:
+        parts = [c * math.sqrt(g.variance) / math.sqrt(g.n) for c, g in _used(row, groups)]
+        se = math.hypot(*parts)
+        shares = [
+            (part / se) ** 4 / (g.n - 1) for part, (_, g) in zip(parts, _used(row, groups), strict=True)
+        ]
+        estimates.append(_estimate(groups, row, alpha, se, 1.0 / math.fsum(shares)))
+    return tuple(estimates)
+
+
+def _used(row: Sequence[float], groups: Sequence[GroupSummary]) -> list[tuple[float, GroupSummary]]:
+    """Return the groups that a contrast weighs, with their coefficients."""
+    return [(c, group) for c, group in zip(row, groups, strict=True) if c]
+
+
+def _estimate(
+    groups: Sequence[GroupSummary], row: Sequence[float], alpha: float, se: float, df: float
+) -> ContrastEstimate:
+    """Return one contrast with its interval over all contrasts of these groups."""
+    between = len(groups) - 1
+    critical = math.sqrt(between * f_upper_quantile(alpha, between, df))
+    shifts = [mean_difference(group, groups[0]) for group in groups]
+    estimate = math.fsum(c * shift for c, shift in zip(row, shifts, strict=True))
+    statistic = estimate / se
+    return ContrastEstimate(
+        coefficients=tuple(row),
+        estimate=estimate,
+        se=se,
+        statistic=statistic,
+        df=df,
+        critical_value=critical,
+        p=f_upper(statistic * statistic / between, between, df),
+        lower=estimate - critical * se,
+        upper=estimate + critical * se,
+    )
+
+
+def _require_contrasts(rows: Sequence[Sequence[float]], k: int) -> None:
+    for row in rows:
+        _require_contrast(row, k)
 
 
 def _require_contrast(row: Sequence[float], k: int) -> None:

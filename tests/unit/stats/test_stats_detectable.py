@@ -4,21 +4,7 @@ import pytest
 from scipy import integrate, stats
 
 from qcreport.errors import DegenerateDataError
-from qcreport.stats.detectable import detectable_difference, sample_size_for, scatter_limits
-from qcreport.stats.pooled import tukey_hsd
-from qcreport.stats.summary import summarize
-
-PROCEDURES = (
-    "tukey_hsd",
-    "tukey_kramer",
-    "games_howell",
-    "dunnett_c",
-    "dunnett_t3",
-    "tamhane_t2",
-    "dunnett",
-    "dunnett_unequal",
-    "dunnett_weighted",
-)
+from qcreport.stats.detectable import detectable_difference, scatter_limits
 
 
 def power_by_definition(nc: float, df: float, critical: float) -> float:
@@ -68,35 +54,3 @@ def test_scatter_limits_are_the_chi_squared_ones() -> None:
     assert upper == pytest.approx(2.0 * math.sqrt(10.0 / stats.chi2.isf(0.95, 10)))
     with pytest.raises(DegenerateDataError):
         scatter_limits(1.0, 0.0)
-
-
-@pytest.mark.parametrize("procedure", PROCEDURES)
-def test_sample_size_is_the_smallest_that_settles(procedure: str) -> None:
-    n = sample_size_for(procedure=procedure, n_groups=4, variance=1.0, margin=1.5)
-    assert 4 <= n <= 60
-    wider = sample_size_for(procedure=procedure, n_groups=4, variance=1.0, margin=3.0)
-    assert wider < n
-
-
-def test_sample_size_against_the_procedure_itself() -> None:
-    n = sample_size_for(procedure="tukey_hsd", n_groups=3, variance=1.0, margin=1.0)
-    for size, settled in ((n - 1, False), (n, True)):
-        spread = math.sqrt((size - 1) / size) if size % 2 == 0 else 1.0
-        values = (
-            [spread * (-1) ** i for i in range(size)]
-            if size % 2 == 0
-            else [0.0, *[(-1.0) ** i for i in range(size - 1)]]
-        )
-        groups = [summarize(label, values) for label in "ABC"]
-        assert groups[0].variance == pytest.approx(1.0)
-        pair = tukey_hsd(groups, alpha=0.05).comparisons[0]
-        assert (pair.upper < 1.0) == settled
-
-
-def test_sample_size_at_its_edges() -> None:
-    assert sample_size_for(procedure="tukey_hsd", n_groups=3, variance=0.0, margin=1.0) == 2
-    assert sample_size_for(procedure="tukey_hsd", n_groups=3, variance=1.0, margin=1e-4, largest=1000) is None
-    with pytest.raises(DegenerateDataError, match="margin"):
-        sample_size_for(procedure="tukey_hsd", n_groups=3, variance=1.0, margin=0.0)
-    with pytest.raises(DegenerateDataError, match="steel"):
-        sample_size_for(procedure="steel", n_groups=3, variance=1.0, margin=1.0)

@@ -68,6 +68,7 @@ def analyse(
             alpha=alpha,
             earliest=earliest,
             left_out=left_out,
+            history=next((h for h in context.history if h.characteristic == characteristic.name), None),
         )
         result, added = characteristic_result(measurements, question)
         results.append(result)

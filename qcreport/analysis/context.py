@@ -10,6 +10,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from qcreport.analysis.provenance import Provenance, provenance_from_json
+from qcreport.rules.history import SpreadHistory, spread_history_from_json
 
 CONTEXT_SCHEMA = "qcreport/context/1"
 
@@ -86,6 +87,8 @@ class Context:
     """qcreport version."""
     provenance: Provenance | None = None
     """What the records add; None where there are none (and in reports of versions before)."""
+    history: tuple[SpreadHistory, ...] = ()
+    """Spread of earlier exports, one entry a characteristic that has any."""
 
     def to_json(self) -> dict[str, Any]:
         """Return the document `qcreport/context/1`."""
@@ -117,7 +120,7 @@ class Context:
             "templates_changed": list(self.templates_changed),
             "run": {"k": self.run_k, "n": self.run_n, "reason": self.run_reason},
             "ledger_head": {"sequence": self.ledger_sequence, "hash": self.ledger_hash},
-            "history": None,
+            "history": [h.to_json() for h in self.history] or None,
             **({} if self.provenance is None else {"records": self.provenance.to_json()}),
             "seal": {
                 "subject": self.seal_subject,
@@ -142,7 +145,7 @@ def context_from_json(data: Mapping[str, Any]) -> Context:
     try:
         report, laboratory, export = data["report"], data["laboratory"], data["export"]
         run, head, seal = data["run"], data["ledger_head"], data["seal"]
-        records = data.get("records")
+        records, history = data.get("records"), data.get("history") or ()
         return Context(
             report_number=str(report["number"]),
             revision=int(report["revision"]),
@@ -176,6 +179,7 @@ def context_from_json(data: Mapping[str, Any]) -> Context:
             demonstration=bool(data["demonstration"]),
             software_version=str(data["software_version"]),
             provenance=None if records is None else provenance_from_json(records),
+            history=tuple(spread_history_from_json(item) for item in history),
         )
     except (KeyError, TypeError, AttributeError, OverflowError) as error:
         raise ValueError(f"context.json lacks or spoils {error}") from None

@@ -6,9 +6,11 @@ import datetime as dt
 from dataclasses import dataclass
 
 from qcreport.analysis.comparable import Comparable, all_equal
+from qcreport.analysis.history import within_batches
 from qcreport.plan.model import ComparisonPlan, Scale
 from qcreport.rules.evidence import Check, FactEvidence
 from qcreport.rules.facts import CANNOT_BE_JUDGED, EVERY_PAIR, WITH_THE_REFERENCE, Facts
+from qcreport.rules.history import SpreadHistory
 from qcreport.rules.spread import judge_spread
 from qcreport.rules.table import RulesTable
 
@@ -25,8 +27,14 @@ class Gathered:
     """Variance checks as computed; empty where there was nothing to check."""
 
 
-def gather(ready: Comparable, plan: ComparisonPlan, rules: RulesTable, earliest: dt.date | None) -> Gathered:
-    """Return the facts of the comparable groups."""
+def gather(
+    ready: Comparable,
+    plan: ComparisonPlan,
+    rules: RulesTable,
+    earliest: dt.date | None,
+    history: SpreadHistory | None = None,
+) -> Gathered:
+    """Return the facts of the comparable groups; `history` is the spread of earlier exports."""
     sizes = [g.n for g in ready.groups]
     smallest = min(sizes, default=0)
     evidence = [
@@ -37,7 +45,7 @@ def gather(ready: Comparable, plan: ComparisonPlan, rules: RulesTable, earliest:
         _variation(ready),
     ]
     evidence.append(_censored(ready))
-    spread, checks = _spread(ready, plan, rules, earliest)
+    spread, checks = _spread(ready, plan, rules, earliest, history)
     evidence.extend(
         (
             spread,
@@ -113,7 +121,11 @@ def _censored(ready: Comparable) -> FactEvidence:
 
 
 def _spread(
-    ready: Comparable, plan: ComparisonPlan, rules: RulesTable, earliest: dt.date | None
+    ready: Comparable,
+    plan: ComparisonPlan,
+    rules: RulesTable,
+    earliest: dt.date | None,
+    history: SpreadHistory | None,
 ) -> tuple[FactEvidence, tuple[Check, ...]]:
     if len(ready.groups) < 2 or not ready.varies or ready.censored:
         nothing = FactEvidence(
@@ -123,6 +135,14 @@ def _spread(
             source="Export",
         )
         return nothing, ()
-    judged = judge_spread(ready.summaries, ready.values, rules.spread, plan.spread, earliest)
+    judged = judge_spread(
+        ready.summaries,
+        ready.values,
+        rules.spread,
+        plan.spread,
+        earliest,
+        history,
+        within_batches(ready, plan),
+    )
     evidence = FactEvidence(fact="spread", value=judged.value, observed=judged.observed, source=judged.source)
     return evidence, judged.checks

@@ -19,6 +19,7 @@ from qcreport.errors import StatisticsError
 from qcreport.plan.model import BY_RULES, POOLED, RANKS, CharacteristicPlan, ComparisonPlan
 from qcreport.rules import Choice, Facts, RulesTable, choose, fixed_by_plan
 from qcreport.rules.facts import CANNOT_BE_JUDGED, SIMILAR
+from qcreport.rules.history import SpreadHistory
 from qcreport.stats.equivalence import most_serious
 
 NOT_COMPARED = "not_compared"
@@ -42,6 +43,8 @@ class Question:
     """True for what is asked beside the answer: only the answers are wanted, no planning of sizes."""
     left_out: frozenset[str] = frozenset()
     """Cells that a person left out."""
+    history: SpreadHistory | None = None
+    """Spread of earlier exports; None where the records hold none."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -76,7 +79,7 @@ class Outcome:
 def decide(groups: Sequence[Group], question: Question) -> Outcome:
     """Return what is compared, by which row, with which answers."""
     ready = comparable(groups, question.plan)
-    gathered = gather(ready, question.plan, question.rules, question.earliest)
+    gathered = gather(ready, question.plan, question.rules, question.earliest, question.history)
     choice = _choice(gathered.facts, question)
     comparison, why = _run(choice.procedure, ready, question)
     return Outcome(ready=ready, gathered=gathered, choice=choice, comparison=comparison, why_none=why)

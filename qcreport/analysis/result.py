@@ -59,6 +59,8 @@ class UnitValue:
     """Marks of its cells: struck, commented, hidden."""
     placed: bool = True
     """False for a mean of readings that has no place among the others, not even by rank."""
+    batch: str = ""
+    """Batch of its readings."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from typing import TypeVar
 
@@ -63,7 +63,7 @@ def groups_of(
     mine = [m for m in measurements.measurements if m.characteristic == characteristic.name]
     _check_units(measurements, mine, characteristic)
     by_label = _gathered((group_label(measurements, m, plan.groups), m) for m in mine)
-    return tuple(_group(label, members, plan.independent_unit) for label, members in by_label.items())
+    return tuple(group_from(label, members, plan.independent_unit) for label, members in by_label.items())
 
 
 def _gathered(pairs: Iterable[tuple[_K, _V]]) -> dict[_K, list[_V]]:
@@ -113,7 +113,8 @@ def group_label(measurements: MeasurementSet, m: Measurement, groups: Groups) ->
     return m.line
 
 
-def _group(label: str, members: list[Measurement], unit: Unit) -> Group:
+def group_from(label: str, members: Sequence[Measurement], unit: Unit) -> Group:
+    """Return one group of its measurements, averaged to the independent unit."""
     present = [m for m in members if not m.missing]
     readings = [(_unit_key(m, unit), unit_value(m)) for m in present]
     if unit is not Unit.READING:
@@ -145,6 +146,7 @@ def unit_value(m: Measurement) -> UnitValue:
         cells=(str(m.cell),),
         censored=m.censored,
         marks=m.marks,
+        batch=m.batch,
     )
 
 
@@ -167,6 +169,7 @@ def _mean_of(values: list[UnitValue]) -> UnitValue:
         censored=censored,
         placed=placed and all(v.placed for v in values),
         marks=tuple(dict.fromkeys(mark for v in values for mark in v.marks)),
+        batch=values[0].batch,
     )
 
 

@@ -9,6 +9,7 @@ from qcreport.analysis.context import Context
 from qcreport.analysis.provenance import Provenance
 from qcreport.records.run import RunInputs, Slot
 from qcreport.report.templates import TemplateSet
+from qcreport.rules.history import SpreadHistory
 from qcreport.settings.plans import PlanSettings
 from qcreport.settings.site import Site
 from qcreport.signing.keys import SigningKey
@@ -36,6 +37,8 @@ class Moment:
     """The sealing key; None where nothing will be sealed."""
     provenance: Provenance
     """What the records add."""
+    history: tuple[SpreadHistory, ...] = ()
+    """Spread of earlier exports."""
 
 
 def build_context(moment: Moment, slot: Slot) -> Context:
@@ -68,5 +71,6 @@ def build_context(moment: Moment, slot: Slot) -> Context:
         pades_level=PADES_LEVEL,
         demonstration=site.demonstration,
         software_version=qcreport.__version__,
+        history=moment.history,
         provenance=moment.provenance,
     )

@@ -17,6 +17,7 @@ from qcreport.errors import ExportRefusedError, LedgerError
 from qcreport.measurements import MeasurementSet
 from qcreport.pipeline.checkpoint import sign_head
 from qcreport.pipeline.context import Moment
+from qcreport.pipeline.history import spread_history
 from qcreport.pipeline.issue import Issuer, Progress
 from qcreport.pipeline.outcome import Outcome, Received, Reported
 from qcreport.pipeline.provenance import gather
@@ -110,6 +111,7 @@ class Pipeline:
             export_name=received.name,
             reason=wish.reason.strip(),
             key=self._key,
+            history=spread_history(self._records, measurements, settings.plan),
             provenance=gather(
                 self._records,
                 settings,

@@ -10,6 +10,7 @@ from qcreport.records.archive import Archive
 from qcreport.records.chain import Entry, Head, Kind
 from qcreport.records.database import Database
 from qcreport.records.listing import EVERYTHING, OpenRefusal, ReportRow, Wanted
+from qcreport.records.past import past_measurements
 from qcreport.records.run import Run, RunInputs
 from qcreport.records.standing import Standing, standings
 from qcreport.records.store import Survey
@@ -78,6 +79,13 @@ class Lookups:
         """Return what of an export is new, known or changed."""
         with self.database.read() as connection:
             return store.survey(connection, measurements)
+
+    def past(
+        self, measurements: MeasurementSet, characteristics: Sequence[str], *, by_line: bool
+    ) -> tuple[Measurement, ...]:
+        """Return the recorded values of earlier batches by the same layout, oldest first."""
+        with self.database.read() as connection:
+            return past_measurements(connection, measurements, characteristics, by_line=by_line)
 
     def reports(self, wanted: Wanted = EVERYTHING) -> tuple[ReportRow, ...]:
         """Return one row a run, in order of number; of all, or of those wanted."""

@@ -1,9 +1,9 @@
 """Whether the groups scatter alike: shown, declared, contradicted, or open.
 
 A variance check that fails to reject proves nothing, least of all at small n. So spread counts as similar
-only where a person has declared it and the data do not contradict, or where an upper confidence limit of the
-largest ratio of standard deviations is small enough. The alternative policy lets this export's own check
-decide.
+only where a person has declared it and the data do not contradict, or where it has been shown: by an upper
+confidence limit of the largest ratio of standard deviations (with the lines' history where there is one), or
+by many earlier batches whose spreads hardly vary. The alternative policy lets this export's own check decide.
 """
 
 from __future__ import annotations
@@ -12,22 +12,28 @@ import datetime as dt
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from qcreport.errors import StatisticsError
 from qcreport.plan.model import SpreadDeclaration
 from qcreport.rules.evidence import Check
 from qcreport.rules.facts import CANNOT_BE_JUDGED, CONFLICT, DIFFERENT, SIMILAR
-from qcreport.rules.table import THIS_EXPORT, SpreadPolicy
-from qcreport.stats.assumptions import (
-    bartlett,
-    brown_forsythe,
-    cochran_c,
-    spread_conflict,
-    spread_ratio_upper_limit,
+from qcreport.rules.history import SpreadHistory
+from qcreport.rules.policy import THIS_EXPORT, SpreadPolicy
+from qcreport.rules.spread_checks import (
+    Pooled,
+    SpreadChecks,
+    conflict_check,
+    description,
+    levene_check,
+    limit_check,
+    together_check,
+    variation_check,
 )
 from qcreport.stats.summary import GroupSummary
 
 LEVENE_SOURCE = "Median-centred Levene: Brown and Forsythe (1974), J. Am. Stat. Assoc. 69, 364-367"
 LIMIT_SOURCE = "Simultaneous upper limit of the largest ratio of standard deviations, F limits, Bonferroni"
+VARIATION_SOURCE = (
+    "Variation of ln sigma beyond sampling: Bartlett and Kendall (1946), Suppl. J. R. Stat. Soc. 8, 128-138"
+)
 CONFLICT_SOURCE = "F of each group against the pooled rest, shared over the groups"
 
 
@@ -51,6 +57,8 @@ def judge_spread(
     policy: SpreadPolicy,
     declaration: SpreadDeclaration | None,
     earliest: dt.date | None,
+    history: SpreadHistory | None = None,
+    within: Sequence[Pooled] = (),
 ) -> SpreadJudgement:
     """Judge the spread of two or more groups, at least one of which varies.
 
@@ -64,109 +72,30 @@ def judge_spread(
         The plan's, or None.
     earliest
         Date of the earliest measurement, or None where the export has no times.
+    history
+        Spread of earlier exports, or None.
+    within
+        This export's part of what is pooled with the lines' history, same order as `groups`.
     """
-    checks = _Checks.of(groups, values, policy, declared=declaration is not None and declaration.similar)
-    if policy.policy == THIS_EXPORT:
+    by_this_export = policy.policy == THIS_EXPORT
+    variation = None if by_this_export else variation_check(groups, history, policy)
+    declared = declaration is not None and declaration.similar
+    checks = SpreadChecks(
+        levene=levene_check(groups, values, policy),
+        limit=limit_check(groups, policy),
+        together=None if by_this_export else together_check(groups, within, history, policy),
+        variation=variation,
+        conflict=conflict_check(groups, policy) if declared or variation is not None else None,
+        description=description(groups),
+    )
+    if by_this_export:
         value, observed, source = _by_this_export(checks, policy)
     else:
         value, observed, source = _shown_or_declared(checks, groups, policy, declaration, earliest)
     return SpreadJudgement(value=value, observed=observed, source=source, checks=checks.all())
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class _Checks:
-    """The variance checks of one characteristic."""
-
-    levene: Check
-    limit: Check
-    conflict: Check | None
-    description: tuple[Check, ...]
-
-    @classmethod
-    def of(
-        cls,
-        groups: Sequence[GroupSummary],
-        values: Sequence[Sequence[float]],
-        policy: SpreadPolicy,
-        *,
-        declared: bool,
-    ) -> _Checks:
-        return cls(
-            levene=_levene_check(groups, values, policy),
-            limit=_limit_check(groups, policy),
-            conflict=_conflict_check(groups, policy) if declared else None,
-            description=_description(groups),
-        )
-
-    def all(self) -> tuple[Check, ...]:
-        conflict = () if self.conflict is None else (self.conflict,)
-        return (self.levene, self.limit, *conflict, *self.description)
-
-
-def _levene_check(
-    groups: Sequence[GroupSummary], values: Sequence[Sequence[float]], policy: SpreadPolicy
-) -> Check:
-    try:
-        found = brown_forsythe([g.label for g in groups], values)
-    except StatisticsError as error:
-        return _undefined("brown_forsythe", error.text)
-    return Check(
-        name="brown_forsythe",
-        statistic=found.statistic,
-        df=found.df,
-        p=found.p,
-        threshold=policy.different_level,
-        met=None if found.p is None else found.p >= policy.different_level,
-    )
-
-
-def _limit_check(groups: Sequence[GroupSummary], policy: SpreadPolicy) -> Check:
-    limit = spread_ratio_upper_limit(groups, confidence=policy.confidence)
-    return Check(
-        name="spread_ratio_limit",
-        statistic=limit,
-        df=(),
-        p=None,
-        threshold=policy.ratio_limit,
-        met=limit <= policy.ratio_limit,
-    )
-
-
-def _conflict_check(groups: Sequence[GroupSummary], policy: SpreadPolicy) -> Check:
-    """Return the check of the group that exceeds the pooled rest most."""
-    found = spread_conflict(groups, alpha=policy.conflict_level)
-    worst = min(found.groups, key=lambda g: g.p)
-    return Check(
-        name="spread_conflict",
-        statistic=worst.statistic,
-        df=(worst.df_group, worst.df_rest),
-        p=worst.p,
-        threshold=policy.conflict_level / len(groups),
-        met=not found.conflict,
-        note=worst.label,
-    )
-
-
-def _description(groups: Sequence[GroupSummary]) -> tuple[Check, ...]:
-    """Return Bartlett's and Cochran's checks, printed as description and never used to choose."""
-    described: list[Check] = []
-    for name, check in (("bartlett", bartlett), ("cochran_c", cochran_c)):
-        try:
-            found = check(groups)
-        except StatisticsError as error:
-            described.append(_undefined(name, error.text))
-        else:
-            described.append(
-                Check(name=name, statistic=found.statistic, df=found.df, p=found.p, threshold=None, met=None)
-            )
-    return tuple(described)
-
-
-def _undefined(name: str, why: str) -> Check:
-    return Check(name=name, statistic=None, df=(), p=None, threshold=None, met=None, note=why)
-
-
-def _by_this_export(checks: _Checks, policy: SpreadPolicy) -> tuple[str, str, str]:
+def _by_this_export(checks: SpreadChecks, policy: SpreadPolicy) -> tuple[str, str, str]:
     p = checks.levene.p
     if p is None:
         return CANNOT_BE_JUDGED, "The variance check is not defined for this export.", LEVENE_SOURCE
@@ -180,7 +109,7 @@ def _by_this_export(checks: _Checks, policy: SpreadPolicy) -> tuple[str, str, st
 
 
 def _shown_or_declared(
-    checks: _Checks,
+    checks: SpreadChecks,
     groups: Sequence[GroupSummary],
     policy: SpreadPolicy,
     declaration: SpreadDeclaration | None,
@@ -202,7 +131,7 @@ def _shown_or_declared(
 
 
 def _why_set_aside(
-    checks: _Checks,
+    checks: SpreadChecks,
     declaration: SpreadDeclaration,
     policy: SpreadPolicy,
     size_ratio: float,
@@ -228,17 +157,53 @@ def _why_set_aside(
     return ""
 
 
-def _shown(checks: _Checks, policy: SpreadPolicy, size_ratio: float) -> tuple[str, str, str]:
-    limit = checks.limit.statistic
-    if limit is not None and checks.limit.met and size_ratio <= policy.shown_size_ratio:
-        words = (
-            f"Shown by this export: no standard deviation is more than {policy.ratio_limit:g} times another."
-        )
-        return SIMILAR, words, LIMIT_SOURCE
+def _shown(checks: SpreadChecks, policy: SpreadPolicy, size_ratio: float) -> tuple[str, str, str]:
+    if size_ratio <= policy.shown_size_ratio and (shown := _shown_by_data(checks, policy)):
+        return (SIMILAR, *shown)
     if checks.levene.met is False:
         return DIFFERENT, "Seen in this export: the groups scatter differently.", LEVENE_SOURCE
-    words = (
-        "Not shown: this export is too small to say that no group scatters more than "
+    return CANNOT_BE_JUDGED, _not_shown(checks, policy, size_ratio), LIMIT_SOURCE
+
+
+def _shown_by_data(checks: SpreadChecks, policy: SpreadPolicy) -> tuple[str, str] | None:
+    """Return what shows that spread is similar and what that rests on; None where nothing does.
+
+    Where every line has a history, it decides together with this export; a second look at this export alone
+    would be a second chance.
+    """
+    ratio = f"no standard deviation is more than {policy.ratio_limit:g} times another."
+    if checks.together is not None:
+        if checks.together.met:
+            return f"Shown by the lines' history and this export together: {ratio}", LIMIT_SOURCE
+        return None
+    if checks.limit.met:
+        return f"Shown by this export: {ratio}", LIMIT_SOURCE
+    contradicted = checks.conflict is not None and checks.conflict.met is False
+    if checks.variation is not None and checks.variation.met and not contradicted:
+        words = (
+            f"Shown by {checks.variation.note.split(',')[0]}: the standard deviation of ln sigma over "
+            f"batches is at most {policy.history_sd_ln:g}, and no group of this export contradicts that."
+        )
+        return words, VARIATION_SOURCE
+    return None
+
+
+def _not_shown(checks: SpreadChecks, policy: SpreadPolicy, size_ratio: float) -> str:
+    """Return why spread is not shown to be similar though nothing shows that it differs."""
+    if size_ratio > policy.shown_size_ratio and any(
+        check is not None and check.met for check in (checks.limit, checks.together, checks.variation)
+    ):
+        return (
+            f"Not shown: the largest group is more than {policy.shown_size_ratio:g} times the smallest, and "
+            "with such sizes even a small difference in spread would matter."
+        )
+    if checks.variation is not None and checks.variation.met and checks.conflict is not None:
+        return (
+            f"Not shown: earlier batches scatter alike, but {checks.conflict.note} scatters more than the "
+            "other groups of this export together."
+        )
+    with_history = "" if checks.together is None else " with the lines' history"
+    return (
+        f"Not shown: this export{with_history} is too small to say that no group scatters more than "
         f"{policy.ratio_limit:g} times as much as another, and a check that fails to object proves nothing."
     )
-    return CANNOT_BE_JUDGED, words, LIMIT_SOURCE

@@ -11,31 +11,10 @@ from typing import Final
 from qcreport.plan.model import PROCEDURES, WITH_REFERENCE
 from qcreport.rules.conditions import Condition, NumberCondition, WordCondition, parse_number_condition
 from qcreport.rules.facts import NUMBERS, WITH_THE_REFERENCE, WORDS, Facts
+from qcreport.rules.policy import SpreadPolicy, parse_policy
 from qcreport.toml_source import TableReader, TomlSource
 
-SHOWN_OR_DECLARED: Final = "shown or declared"
-THIS_EXPORT: Final = "levene on this export"
 _ID: Final = re.compile(r"[a-z][a-z0-9_]{0,63}")
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class SpreadPolicy:
-    """How the fact `spread` is judged."""
-
-    policy: str
-    """`shown or declared`, or `levene on this export`."""
-    confidence: float
-    """Simultaneous confidence of the upper limit of the largest spread ratio."""
-    ratio_limit: float
-    """Largest ratio of standard deviations that counts as similar."""
-    shown_size_ratio: float
-    """Largest/smallest n up to which spread may be shown by data."""
-    declared_size_ratio: float
-    """Largest/smallest n above which a declaration must accept unequal sizes."""
-    conflict_level: float
-    """Level of the declaration's conflict test, shared over the groups."""
-    different_level: float
-    """Level of the median-centred Levene check."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -84,7 +63,7 @@ def parse_rules(data: bytes, file: str) -> RulesTable:
     source = TomlSource.from_bytes(data, file)
     top = source.top
     name, title = top.text("name"), top.text("title")
-    spread = _spread_policy(top.table("spread", required=True))
+    spread = parse_policy(top.table("spread", required=True))
     readers = top.tables("row", required=True)
     rows = tuple(_row(reader) for reader in readers)
     table = RulesTable(name=name, title=title, spread=spread, rows=rows)
@@ -95,18 +74,6 @@ def parse_rules(data: bytes, file: str) -> RulesTable:
         _prove(table, top, readers)
     source.finish()
     return table
-
-
-def _spread_policy(table: TableReader) -> SpreadPolicy:
-    return SpreadPolicy(
-        policy=table.text("policy", choices=(SHOWN_OR_DECLARED, THIS_EXPORT)),
-        confidence=table.number("confidence", 0.95, above=0.5, below=1.0),
-        ratio_limit=table.number("ratio_limit", 1.5, above=1.0),
-        shown_size_ratio=table.number("shown_size_ratio", 1.25, minimum=1.0),
-        declared_size_ratio=table.number("declared_size_ratio", 1.5, minimum=1.0),
-        conflict_level=table.number("conflict_level", 0.05, above=0.0, below=1.0),
-        different_level=table.number("different_level", 0.05, above=0.0, below=1.0),
-    )
 
 
 def _row(table: TableReader) -> Row:

@@ -72,7 +72,10 @@ class TestShipped:
 
     def test_the_default_policy(self) -> None:
         spread = shipped("default").spread
-        assert dataclasses.astuple(spread) == ("shown or declared", 0.95, 1.5, 1.25, 1.5, 0.05, 0.05)
+        assert dataclasses.astuple(spread) == (
+            *("shown or declared", 0.95, 1.5, 1.25, 1.5, 0.05, 0.05),
+            *(40, 4, 0.3, 6),  # earlier batches: fewest, their df, sd of ln sigma, most groups
+        )
         assert shipped("textbook").spread.policy == "levene on this export"
 
     @pytest.mark.parametrize("name", ["default", "textbook"])

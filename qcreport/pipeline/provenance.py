@@ -64,7 +64,7 @@ def gather(
             changes=changes,
         )
 
-    states = records.standings()
+    states, total = records.standings(), len(measurements.measurements)
     told = tuple(against(run) for run in others)
     replaces = None
     if wish.replaces:
@@ -81,8 +81,8 @@ def gather(
             LeftOut(cells=inputs.left_out, reason=wish.reason.strip(), by=actor) if inputs.left_out else None
         ),
         replaces=replaces,
-        new=survey.new,
-        known=survey.known,
+        new=survey.first_seen,
+        known=total - survey.first_seen - sum(c.when == "now" for c in survey.history),
         not_joined=survey.not_joined,
         changed=survey.history,
         retests=survey.retests,

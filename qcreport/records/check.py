@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
@@ -13,10 +13,14 @@ from qcreport.canonical import sha256_hex
 from qcreport.errors import EnvironmentFailedError, LedgerError
 from qcreport.records import ledger, runs, store
 from qcreport.records.archive import Archive
-from qcreport.records.chain import Entry, Head, Kind, check_chain
+from qcreport.records.chain import Head, Kind
+from qcreport.records.chain_walk import walk_chain
+from qcreport.records.check_checkpoints import Judged, Trust, judge_checkpoints
+from qcreport.records.check_values import Reread, reread
+from qcreport.records.checkpoints import FILE_NAME
 from qcreport.records.lookups import Lookups
 from qcreport.records.run import Run, Sealing, run_key
-from qcreport.records.tables import EXPORT
+from qcreport.records.tables import CONTENT, EXPORT, SETTING_FILE
 
 Facts = Mapping[str, Any]
 
@@ -35,6 +39,10 @@ class RecordsStatus:
     """The ledger's head when it was checked."""
     problems: tuple[str, ...]
     """One sentence each; empty where everything holds."""
+    covered: int = 0
+    """Newest entry that a signed checkpoint covers; 0 where none does."""
+    n_reread: int = 0
+    """Exports read again and held against the store."""
 
     @property
     def ok(self) -> bool:
@@ -42,7 +50,24 @@ class RecordsStatus:
         return not self.problems
 
 
-def check(records: Lookups, reports_folder: Path, known: Iterable[Head] = ()) -> RecordsStatus:
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CheckOptions:
+    """What is checked beside the records themselves."""
+
+    known: tuple[Head, ...] = ()
+    """Heads kept elsewhere; those under which numbers were reserved are added."""
+    trust: Trust | None = None
+    """How checkpoints are judged; None: they are not looked at."""
+    checkpoint_files: tuple[Path, ...] = ()
+    """Checkpoints kept elsewhere, beside the site's own."""
+    reread: Reread | None = None
+    """Which exports are read again; None for none."""
+
+
+PLAIN = CheckOptions()
+
+
+def check(records: Lookups, reports_folder: Path, options: CheckOptions = PLAIN) -> RecordsStatus:
     """Check everything recorded and return what was found.
 
     Parameters
@@ -51,39 +76,78 @@ def check(records: Lookups, reports_folder: Path, known: Iterable[Head] = ()) ->
         The site's records.
     reports_folder : Path
         Where published reports lie.
-    known : iterable of Head
-        Heads kept elsewhere; those under which numbers were reserved are added.
+    options : CheckOptions
+        Heads and checkpoints from elsewhere, and how much is read again.
     """
+    signed = _checkpoints(records, options)
     with records.database.read() as connection:
-        entries = tuple(ledger.entries(connection))
         found = runs.all_runs(connection)
-        head = ledger.head(connection)
-        exports = tuple(connection.execute(select(EXPORT.c.sha256)).scalars())
-        # 1. The chain holds, also against the heads that stand in the reports.
-        chain = check_chain(entries, [*known, *(run.ledger_head for run in found)])
-        problems = [problem.text for problem in chain]
-        # 2. What the tables say of sealed runs is what the ledger says.
-        sealed = {facts.get("number"): facts for facts in _facts_of(entries, Kind.SEALED)}
+        # 1. The chain holds, also against the heads that stand in the reports and under signatures.
+        known = [*options.known, *signed.heads, *(run.ledger_head for run in found)]
+        chain = walk_chain(lambda: ledger.entries(connection), known)
+        problems = [problem.text for problem in chain.problems] + list(signed.problems)
+        # 2. What the tables say of sealed runs and imports is what the ledger says.
+        sealed = {facts.get("number"): facts for facts in _facts_of(connection, Kind.SEALED)}
         problems += _runs_against_ledger(connection, found, sealed)
-    # 3. Every file that is referred to is in the archive, and every file there matches its digest.
-    n_archived, archive_problems = _check_archive(records.archive, _referred(exports, found))
-    # 4. The published reports are those that were sealed.
+        problems += _imports_against_ledger(connection)
+        referred = _referred(connection, found)
+        # 3. The store holds what the archived exports hold.
+        n_reread, values = (
+            (0, []) if options.reread is None else reread(connection, records.archive, options.reread)
+        )
+    # 4. Every file that is referred to is in the archive, and every file there matches its digest.
+    n_archived, archive_problems = _check_archive(records.archive, referred)
+    # 5. The published reports are those that were sealed, and no others.
     reports, report_problems = _check_reports(reports_folder, sealed)
     return RecordsStatus(
-        n_entries=len(entries),
+        n_entries=chain.n_entries,
         n_archived=n_archived,
         n_reports=reports,
-        head=head,
-        problems=(*problems, *archive_problems, *report_problems),
+        head=chain.head,
+        problems=(*problems, *values, *archive_problems, *report_problems),
+        covered=signed.covers,
+        n_reread=n_reread,
     )
 
 
-def _facts_of(entries: Sequence[Entry], kind: Kind) -> list[Facts]:
-    found: list[Facts] = []
-    for entry in entries:
-        if entry.kind == kind.value and entry.intact_as(entry.sequence):
-            found.append(entry.facts_object())
-    return found
+def _checkpoints(records: Lookups, options: CheckOptions) -> Judged:
+    if options.trust is None:
+        return Judged(heads=(), count=0, problems=())
+    own = records.database.path.parent / FILE_NAME
+    return judge_checkpoints((own, *options.checkpoint_files), options.trust)
+
+
+_NEEDED = (
+    "number",
+    "run_key",
+    "name",
+    "plan",
+    "k",
+    "reason",
+    "context_sha256",
+    "result_sha256",
+    "report_name",
+    "report_sha256",
+    "answers",
+    "measurements_sha256",
+)
+
+
+def _facts_of(connection: Connection, kind: Kind) -> Iterator[Facts]:
+    for entry in ledger.entries(connection, kind=kind):
+        if entry.intact_as(entry.sequence):
+            facts = entry.facts_object()
+            yield {name: facts.get(name) for name in _NEEDED}
+
+
+def _imports_against_ledger(connection: Connection) -> Iterator[str]:
+    for entry in ledger.entries(connection, kind=Kind.IMPORTED):
+        if not entry.intact_as(entry.sequence):
+            continue
+        facts = entry.facts_object()
+        digest = store.digest_of_import(connection, str(facts["export_sha256"]), str(facts["layout"]))
+        if digest != facts.get("measurements_sha256"):
+            yield f"Measurements imported from {facts.get('name')} were changed, added or removed."
 
 
 def _runs_against_ledger(
@@ -127,8 +191,10 @@ def _sealed_fields(run: Run, sealing: Sealing) -> dict[str, Any]:
     }
 
 
-def _referred(exports: Iterable[str], found: Iterable[Run]) -> tuple[str, ...]:
-    digests = dict.fromkeys(exports)
+def _referred(connection: Connection, found: Iterable[Run]) -> tuple[str, ...]:
+    digests = dict.fromkeys(connection.execute(select(EXPORT.c.sha256)).scalars())
+    digests |= dict.fromkeys(connection.execute(select(SETTING_FILE.c.sha256)).scalars())
+    digests |= dict.fromkeys(connection.execute(select(CONTENT.c.layout_sha256)).scalars())
     for run in found:
         own = (*run.inputs.digests(), run.context_sha256, run.result_sha256)
         digests |= dict.fromkeys(digest for digest in own if digest is not None)
@@ -158,4 +224,15 @@ def _check_reports(folder: Path, sealed: Mapping[Any, Facts]) -> tuple[int, list
             continue
         if sha256_hex(data) != facts.get("report_sha256"):
             problems.append(f"The report {number} ({name}) is not the one that was sealed.")
-    return len(sealed), problems
+    return len(sealed), problems + _unknown_reports(folder, sealed)
+
+
+def _unknown_reports(folder: Path, sealed: Mapping[Any, Facts]) -> list[str]:
+    """Find reports of which the ledger knows nothing: its end was cut, or recording them was interrupted."""
+    known = {Path(str(facts.get("report_name"))).name for facts in sealed.values()}
+    return [
+        f"The report {path.name} is not in the ledger: its end was cut, or a process was stopped before it "
+        "recorded the report (then compare the export again)."
+        for path in sorted(folder.glob("[0-9][0-9][0-9][0-9]-*.pdf"))
+        if path.name not in known
+    ]

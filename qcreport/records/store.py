@@ -41,6 +41,8 @@ class Survey:
     """Measurements seen with the same text."""
     changed: tuple[ChangedValue, ...]
     """Measurements seen with another text, export order."""
+    first_seen: int = 0
+    """Measurements that no other export held; of an export compared again as many as the first time."""
     not_joined: int = 0
     """Measurements without a sample id."""
     history: tuple[ValueChange, ...] = ()
@@ -115,6 +117,7 @@ def _compare(
             new=new,
             known=len(judged) - new - len(changed),
             changed=changed,
+            first_seen=sum(m.first_seen for _, m in judged),
             not_joined=sum(item.measurement.sample is None for item, _ in judged),
             history=changes,
             retests=tuple(m.retest for _, m in judged if m.retest is not None),

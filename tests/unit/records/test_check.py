@@ -10,7 +10,7 @@ import pytest
 
 from qcreport.canonical import sha256_hex
 from qcreport.records.chain import Head
-from qcreport.records.check import check
+from qcreport.records.check import CheckOptions, check
 from qcreport.records.facade import Records
 from qcreport.records.listing import ReportState
 
@@ -100,4 +100,4 @@ def test_a_report_that_was_touched_is_found(site: Records, reports: Path) -> Non
 
 def test_a_head_kept_elsewhere_is_held_against(site: Records, reports: Path) -> None:
     known = Head(sequence=20, entry_hash="f" * 64)
-    assert "entry 20 is known" in check(site, reports, [known]).problems[0]
+    assert "entry 20 is known" in check(site, reports, CheckOptions(known=(known,))).problems[0]

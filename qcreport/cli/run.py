@@ -88,7 +88,7 @@ def print_error(error: QcReportError, arguments: argparse.Namespace) -> None:
         print(json.dumps(error_json(error), ensure_ascii=False, indent=1))
         return
     if isinstance(error, ExportRefusedError):
-        print(printable(error.five_lines()), file=sys.stderr, end="")
+        print(refusal_lines(error), file=sys.stderr, end="")
         return
     print(printable(error.text), file=sys.stderr)
 
@@ -101,6 +101,13 @@ def error_json(error: QcReportError) -> dict[str, Any]:
 def printable(text: str) -> str:
     """Return text without control characters, which a terminal would act on; line ends stay."""
     return "".join(c if c == "\n" or c.isprintable() else f"\\x{ord(c):02x}" for c in text)
+
+
+def refusal_lines(error: ExportRefusedError) -> str:
+    """Return a refusal in its five lines; names of files and sheets can add none."""
+    from qcreport.intake.refusals import five_safe_lines
+
+    return five_safe_lines(error)
 
 
 def _os_words(error: OSError) -> str:

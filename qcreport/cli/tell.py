@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import sys
 
-from qcreport.cli.run import printable
+from qcreport.cli.run import printable, refusal_lines
 from qcreport.cli.words import outcome_lines
 from qcreport.errors import ExportRefusedError
 from qcreport.pipeline.inbox import Handled
@@ -47,7 +47,7 @@ class TerminalAudience(Audience):
 
     def _refusal(self, error: ExportRefusedError, folder: str) -> None:
         self.refused.append((error, folder))
-        print(printable(error.five_lines()) + f"Kept in:   {folder}\n", flush=True)
+        print(refusal_lines(error) + f"Kept in:   {folder}\n", flush=True)
 
     def _clear(self) -> None:
         if self._shown:

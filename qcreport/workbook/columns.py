@@ -2,11 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+from contextlib import contextmanager
 from typing import NamedTuple
 
+from qcreport.errors import ExportRefusedError
 from qcreport.workbook.cells import Kind, Sheet
 from qcreport.workbook.headings import (
     Headings,
+    all_differences,
     check_heading,
     find_column,
     read_headings,
@@ -51,12 +55,30 @@ def find_columns(sheet: Sheet, table: TableLayout, last_row: int) -> TableColumn
     """Return where the parts of a table stand; refuse where a heading is not what the layout says."""
     headings = read_headings(sheet, table)
     sources: dict[str, int] = {}
+    values: list[tuple[ValueLayout, tuple[int, ...]]] = []
+    differences: list[ExportRefusedError] = []
     for name, source in named_sources(table).items():
-        column = _source_column(headings, source)
-        if column is not None:
-            sources[name] = column
-    values = tuple((value, _value_columns(headings, table, value, last_row)) for value in table.values)
-    return TableColumns(sheet, table, headings, sources, values, last_row)
+        with _collected(differences):
+            column = _source_column(headings, source)
+            if column is not None:
+                sources[name] = column
+    for value in table.values:
+        with _collected(differences):
+            values.append((value, _value_columns(headings, table, value, last_row)))
+    if differences:
+        raise all_differences(differences)
+    return TableColumns(sheet, table, headings, sources, tuple(values), last_row)
+
+
+@contextmanager
+def _collected(differences: list[ExportRefusedError]) -> Iterator[None]:
+    """Collect a difference between layout and export, so that all are told at once."""
+    try:
+        yield
+    except ExportRefusedError as refusal:
+        if refusal.code != "layout_mismatch":
+            raise
+        differences.append(refusal)
 
 
 def _source_column(headings: Headings, source: Source) -> int | None:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from itertools import islice
 from typing import NamedTuple
 
 from qcreport.errors import ExportRefusedError
@@ -11,6 +12,8 @@ from qcreport.workbook.cells import Kind, Sheet
 from qcreport.workbook.layout_model import TableLayout
 from qcreport.workbook.refusals import quoted, refused
 from qcreport.workbook.units import looks_like_unit, same_unit, unit_in_heading, without_unit
+
+_ROWS_LOOKED_AT = 100
 
 
 def collapsed(text: str) -> str:
@@ -81,14 +84,29 @@ def check_heading(headings: Headings, column: int, wanted: str, *, unit: str | N
         raise refuse_heading_unit(headings, column, found, wanted)
     elsewhere = headings.columns_saying(wanted)
     where = f" {quoted(wanted)} stands in column {column_letters(elsewhere[0])}." if elsewhere else ""
+    cells = [headings.ref(c) for c in (column, *elsewhere[:1])]
+    if not elsewhere and (lower := find_text(headings.sheet, wanted)) is not None:
+        where, cells = f" {quoted(wanted)} stands in {lower}.", [*cells, lower]
     raise refused(
         "layout_mismatch",
         where=str(headings.ref(column)),
         found=(f"The heading is {quoted(found)}." if found else "There is no heading.") + where,
         expected=f"The layout says {quoted(wanted)}.",
         next_step="Export with the columns as before, or change the layout to fit.",
-        cells=[str(headings.ref(c)) for c in (column, *elsewhere[:1])],
+        cells=[str(cell) for cell in cells],
     )
+
+
+def find_text(sheet: Sheet, wanted: str) -> CellRef | None:
+    """Return the one cell near the top of a sheet that holds a text: a heading may have moved up or down."""
+    text = collapsed(wanted)
+    found = [
+        sheet.ref(row, column)
+        for row, cells in islice(sheet.rows.items(), _ROWS_LOOKED_AT)
+        for column, cell in cells.items()
+        if cell.kind is Kind.TEXT and collapsed(cell.text) == text
+    ]
+    return found[0] if len(found) == 1 else None
 
 
 def _differs_in_unit(found: str, wanted: str, unit: str) -> bool:
@@ -119,12 +137,29 @@ def find_column(headings: Headings, wanted: str) -> int:
     if columns:
         raise refuse_ambiguous_column(headings, columns, wanted)
     row = headings.rows[-1] if headings.rows else 1
+    lower = find_text(headings.sheet, wanted)
     raise refused(
         "layout_mismatch",
         where=f"row {row}" if headings.sheet.name is None else f"sheet {headings.sheet.name}, row {row}",
-        found=f"No column has the heading {quoted(wanted)}.",
+        found=f"No column has the heading {quoted(wanted)}." + (f" It stands in {lower}." if lower else ""),
         expected=f"The layout says that there is a column {quoted(wanted)}.",
         next_step="Export with the columns as before, or change the layout to fit.",
+        cells=[str(lower)] if lower else [],
+    )
+
+
+def all_differences(refusals: Sequence[ExportRefusedError]) -> ExportRefusedError:
+    """Return one refusal that shows everything in which a table differs from its layout."""
+    if len(refusals) == 1:
+        return refusals[0]
+    told = list(dict.fromkeys((r.where, r.found, r.expected) for r in refusals))
+    return refused(
+        "layout_mismatch",
+        where=", ".join(dict.fromkeys(where for where, _, _ in told)),
+        found=" ".join(f"{where}: {found}" for where, found, _ in told),
+        expected=" ".join(f"{where}: {expected}" for where, _, expected in told),
+        next_step=refusals[0].next_step,
+        cells=list(dict.fromkeys(cell for refusal in refusals for cell in refusal.cells)),
     )
 
 

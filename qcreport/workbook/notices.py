@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import Final
 
 from qcreport.measurements import CellRef, Notice
-from qcreport.workbook.refusals import MAX_LISTED_CELLS, cells_in_words
+from qcreport.workbook.refusals import MAX_LISTED_CELLS, cells_in_words, one_line
 
 SENTENCES: Final = {
     "text_numbers_converted": "{n} values are stored as text and were read as numbers",
@@ -73,4 +73,5 @@ class NoticeBook:
             text += f" ({cells_in_words(unique)})"
         if details := self._details[code]:
             text += f": {', '.join(details[:10])}"
-        return Notice(code=code, cells=tuple(str(c) for c in unique[:MAX_LISTED_CELLS]), text=text + ".")
+        listed = tuple(str(cell) for cell in unique[:MAX_LISTED_CELLS])
+        return Notice(code=code, cells=listed, text=one_line(text) + ".")

@@ -102,7 +102,7 @@ def _wide(draft: LayoutDraft, choice: Choice, columns: tuple[int, int], index: i
     draft.groups = (*draft.groups, *names)
     counters = [f for f in choice.facts if f.counter]
     if counters:
-        draft.add("replicate", _column(counters[0]), remark(counters[0].heading))
+        draft.add("replicate", _column(counters[0]))
     draft.add(value="[[table.value]]")
     name = Question(key=f"name{index}", text="What was measured (a short name)?", kind="text")
     unit = Question(key=f"unit{index}", text="In which unit?", kind="text")
@@ -122,11 +122,11 @@ def _labels(draft: LayoutDraft, choice: Choice, *, index: int, each: bool) -> No
     for key, words in (("line", known.LINE), ("sample", known.SAMPLE), ("replicate", known.REPLICATE)):
         found = choice.column_with(words, taken=taken)
         if found is not None and found.texts:
-            draft.add(key, _column(found), remark(found.heading))
+            draft.add(key, _column(found))
             taken.add(found.column)
     times = choice.times()
     if times is not None and times.column not in taken:
-        draft.add("time", _column(times), remark(times.heading))
+        draft.add("time", _column(times))
         taken.add(times.column)
     status = choice.column_with(known.STATUS, taken=taken)
     if status is not None and status.n_words:
@@ -137,7 +137,7 @@ def _group(draft: LayoutDraft, choice: Choice, index: int) -> int:
     best, score = choice.groups[0]
     draft.groups = (*draft.groups, *(text.strip() for text in best.texts))
     if len(choice.likely_groups()) == 1 and choice.groups_clear and max(score, choice.score) >= ENOUGH:
-        draft.add("group", _column(best), f"the batch: {remark(best.heading)}; score {score:.2f}")
+        draft.add("group", _column(best), f"the batch; score {score:.2f}")
         return best.column
     question = Question(
         key=f"group{index}",
@@ -240,4 +240,7 @@ def _unit_question(facts: ColumnFacts, index: int) -> str:
 
 
 def _column(facts: ColumnFacts) -> str:
-    return f'{{ col = "{letters(facts)}" }}'
+    """Return the source of a label, with its heading to be checked."""
+    heading = " ".join(facts.heading.split())
+    checked = f", header = {toml_text(heading)}" if heading else ""
+    return f'{{ col = "{letters(facts)}"{checked} }}'

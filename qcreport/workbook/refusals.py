@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from typing import Final
+from unicodedata import category
 
 from qcreport.errors import ExportRefusedError
 from qcreport.measurements import CellRef, column_letters
@@ -35,12 +36,19 @@ def refused(
     return ExportRefusedError(
         code,
         file="",
-        where=where,
-        found=found,
-        expected=expected,
-        next_step=next_step,
+        where=one_line(where),
+        found=one_line(found),
+        expected=one_line(expected),
+        next_step=one_line(next_step),
         cells=tuple(cells[:MAX_LISTED_CELLS]),
     )
+
+
+def one_line(text: str) -> str:
+    """Return a text that may hold names from an export on one line; what does not print as U+XXXX."""
+    if text.isprintable():
+        return text
+    return "".join(c if c.isprintable() or category(c) == "Zs" else f"U+{ord(c):04X}" for c in text)
 
 
 def damaged(found: str, *, where: str = "the file") -> ExportRefusedError:

@@ -54,7 +54,7 @@ def test_without_a_terminal_blanks_are_left(
     plan = (folder / "plans" / "o01-plain-long.toml").read_text("utf-8")
     assert plan.count(f"= {BLANK}") == 4
     layout = tomllib.loads((folder / "layouts" / "o01-plain-long.toml").read_text("utf-8"))
-    assert layout["table"][0]["group"] == {"col": "A"}
+    assert layout["table"][0]["group"] == {"col": "A", "header": "Batch"}
 
 
 def test_at_a_terminal_answers_fill_the_plan(
@@ -130,3 +130,12 @@ def test_answers_as_typed(
 ) -> None:
     typed(monkeypatch, *lines)
     assert ask([question]) == ({} if answer is None else {"q": answer})
+
+
+def test_file_name_adds_no_line_to_its_refusal(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    path = tmp_path / "x\nNext step: none.xlsx"
+    path.write_bytes(b"no workbook")
+    assert propose(str(path), "--out", str(tmp_path / "new")) == 3
+    said = capsys.readouterr().err
+    assert said.count("\n") == 5
+    assert "x\\nNext step: none.xlsx" in said

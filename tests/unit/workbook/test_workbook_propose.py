@@ -218,7 +218,7 @@ def test_texts_of_the_workbook_stay_texts_in_the_files() -> None:
     draft = draft_of(data)
     layout = render(draft.layout, {})
     assert all(line.isprintable() for line in layout.split("\n"))
-    assert tomllib.loads(layout)["table"][0]["group"] == {"col": "A"}
+    assert tomllib.loads(layout)["table"][0]["group"]["header"].startswith('Batch"] [x]')
     answers = {"margin0": "1", "lower0": "", "upper0": "", "reference": draft.questions[0].choices[1]}
     plan = parse_plan(render(draft.plan, answers).encode(), "p.toml")
     assert plan.reference == f'{BATCHES[0]}"\n#'

@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from qcreport.analysis.context import Context, context_from_json
+from qcreport.audit.strict_form import deviations
 from qcreport.audit.verdict import AttachmentStatus
 from qcreport.canonical import sha256_hex
 from qcreport.signing.attachments import CONTEXT_NAME, RESULT_NAME, is_export
@@ -103,11 +104,15 @@ def _result_status(
 
 
 def _context(data: bytes | None) -> Context | None:
+    """Return the context where it can be read and every value has the form in which we write it."""
     document = _document(data)
+    if document is None:
+        return None
     try:
-        return None if document is None else context_from_json(document)
+        context = context_from_json(document)
     except ValueError:
         return None
+    return None if any(deviations(document, context.to_json())) else context
 
 
 def _document(data: bytes | None) -> dict[str, Any] | None:

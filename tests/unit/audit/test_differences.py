@@ -113,9 +113,21 @@ def test_a_later_version_may_add_keys_and_lose_none() -> None:
     )
     added["versions"]["qcreport"] = "0.2.0"
     assert found(result_document(), added) == ()
+    assert compare_results(result_document(), added).notes == (
+        "made with qcreport 0.1.0, recomputed with 0.2.0",
+        "characteristics[].pairs[].effect: not in the report; this version of qcreport adds it",
+    )
     assert found(added, result_document()) == (
         "characteristics[0].pairs[0].effect: 0.3 in the report, nothing recomputed",
     )
+
+
+def test_a_flood_of_added_keys_is_cut_and_no_difference() -> None:
+    newer = {**result_document(), **{f"new_{number}": number for number in range(30)}}
+    newer["versions"] = {**newer["versions"], "qcreport": "0.2.0"}
+    compared = compare_results(result_document(), newer)
+    assert compared.matches
+    assert compared.notes[-1] == "and 10 more that this version adds"
 
 
 def test_a_flood_of_differences_is_cut() -> None:

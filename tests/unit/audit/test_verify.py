@@ -133,6 +133,35 @@ def test_context_and_result_that_cannot_be_read(
     assert wrong(status)["plan.toml"] == "context.json does not say what it should be"
 
 
+@pytest.mark.parametrize(
+    ("part", "key", "value"),
+    [
+        ("run", "k", "1"),
+        ("run", "k", True),
+        ("report", "revision", 1.9),
+        (None, "demonstration", "false"),
+        (None, "demonstration", 0),
+        (None, "templates_changed", "ab"),
+        ("plan", "name", 7),
+    ],
+)
+def test_a_context_with_a_value_of_another_kind(
+    files: dict[str, bytes], service_key: SigningKey, part: str | None, key: str, value: object
+) -> None:
+    context = json.loads(files["context.json"])
+    (context if part is None else context[part])[key] = value
+    pdf = sealed_with({**files, "context.json": to_readable_json_bytes(context)}, service_key)
+    status = verified(pdf, service_key)
+    assert not status.valid
+    assert wrong(status)["context.json"] == "it cannot be read"
+
+
+def test_a_context_of_a_later_version_may_say_more(files: dict[str, bytes], service_key: SigningKey) -> None:
+    context = {**json.loads(files["context.json"]), "weather": {"rain": True}}
+    pdf = sealed_with({**files, "context.json": to_readable_json_bytes(context)}, service_key)
+    assert verified(pdf, service_key).valid
+
+
 @pytest.mark.parametrize("part", ["export", "plan"])
 def test_a_result_of_something_else(files: dict[str, bytes], service_key: SigningKey, part: str) -> None:
     other = result_document()

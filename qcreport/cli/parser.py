@@ -7,6 +7,7 @@ import os
 from typing import Final, NoReturn, TypeAlias
 
 import qcreport
+from qcreport.cli import parser_records
 from qcreport.errors import UsageError
 
 COMMANDS: Final[dict[str, str]] = {
@@ -14,13 +15,13 @@ COMMANDS: Final[dict[str, str]] = {
     "site new": "site_new",
     "config check": "config_check",
     "plan propose": "plan_propose",
+    "plan size": "plan_size",
     "layout try": "layout_try",
     "rules show": "rules_show",
     "keys new": "keys_new",
     "verify": "verify",
     "extract": "extract",
-    "records list": "records_list",
-    "records check": "records_check",
+    **parser_records.COMMANDS,
     "watch": "watch",
     "demo": "demo",
 }
@@ -36,7 +37,8 @@ Setting up
   site new DIR              make a site: folders, settings, rules
   keys new                  make the key that seals, or a person's key
   config check              read all settings and say every fault at once
-  plan propose EXPORT       draft a layout and a plan from an export, for a person to complete
+  config approve PLAN       approve a plan with its layout and rules, by a person's key
+  plan propose | size       draft a layout and a plan from an export; how many results a difference needs
   layout try EXPORT         show what would be read from an export, cell by cell
   rules show [TABLE]        print a decision table
 
@@ -44,6 +46,9 @@ Auditors
   verify REPORT.pdf         seal, attachments and numbers, from the file alone
   extract REPORT.pdf DIR    write the attached export, settings and result
   records list | check      what was reported; whether anything was changed
+  records export DIR        a period as one folder: reports, originals, ledger, how to check them
+  records import FILE…      past exports into the store, without reports
+  records withdraw NUMBER   withdraw a report, with the reason
 
 Service
   watch [--once]            take every export dropped into the inbox
@@ -138,6 +143,7 @@ def _setting_up(commands: Commands) -> None:
     p.add_argument("--days", type=int, default=730, help="days until the certificate ends (730)")
     config = _group(commands, "config", "Check settings.")
     _add(config, "config check", "Read all settings; say every fault at once.", site=True, json=True)
+    parser_records.add_approve(config, _add)
     plan = _group(commands, "plan", "Draft plans.")
     p = _add(plan, "plan propose", "Draft a layout and a plan from an export.", site=True, json=False)
     p.add_argument("export", metavar="EXPORT", help="an export with values; nothing is recorded")
@@ -149,6 +155,24 @@ def _setting_up(commands: Commands) -> None:
     rules = _group(commands, "rules", "Show decision tables.")
     p = _add(rules, "rules show", "Print a decision table.", site=True, json=False)
     p.add_argument("table", nargs="?", default="default", metavar="TABLE", help="default, textbook, your own")
+    _plan_size(plan)
+
+
+def _plan_size(plan: Commands) -> None:
+    p = _add(plan, "plan size", "Say how many results a group are needed.", site=True, json=True)
+    p.add_argument("--plan", metavar="NAME|FILE", help="takes margin, alpha, reference and procedure from it")
+    p.add_argument("--characteristic", metavar="NAME", help="one of the plan's, where it has several")
+    p.add_argument(
+        "--difference", type=float, metavar="D", help="true difference to be seen (a ratio on the log scale)"
+    )
+    p.add_argument("--sd", type=float, metavar="S", help="standard deviation of a result (else the plan's)")
+    p.add_argument("--margin", type=float, metavar="M", help="smallest difference that matters")
+    p.add_argument(
+        "--groups", type=int, default=2, metavar="K", help="groups compared, with the reference (2)"
+    )
+    p.add_argument("--procedure", metavar="NAME", help="a procedure based on means; else as the rules choose")
+    p.add_argument("--alpha", type=float, metavar="A", help="family-wise error rate (0.05)")
+    p.add_argument("--power", type=float, default=0.80, metavar="P", help="probability to see it (0.80)")
 
 
 def _auditors(commands: Commands) -> None:
@@ -162,8 +186,7 @@ def _auditors(commands: Commands) -> None:
     p.add_argument("report", metavar="REPORT.pdf")
     p.add_argument("dir", metavar="DIR", help="where to; nothing there is overwritten")
     records = _group(commands, "records", "Look into the records.")
-    _add(records, "records list", "List reports.", site=True, json=True)
-    _add(records, "records check", "Find anything changed, dropped or missing.", site=True, json=True)
+    parser_records.add_records(records, _add)
 
 
 def _service(commands: Commands) -> None:

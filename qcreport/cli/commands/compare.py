@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 import argparse
-import getpass
 import json
 import secrets
 import sys
 from pathlib import Path
 
 from qcreport.canonical import sha256_hex
+from qcreport.cli.account import account
 from qcreport.cli.now import now
 from qcreport.cli.run import DONE, REFUSED, print_error
 from qcreport.cli.words import outcome_lines
@@ -70,7 +70,7 @@ def _received(path: Path, site: Site) -> Received:
         data=data,
         sha256=sha256_hex(data),
         claim=f"compare-{secrets.token_hex(8)}",
-        actor=_account(),
+        actor=account(),
     )
 
 
@@ -83,13 +83,6 @@ def _too_large(path: Path, site: Site) -> ExportRefusedError:
         expected=f"At most {site.limits.max_file_bytes:,} bytes (the limit of this site).",
         next_step="Export fewer results at a time, or have the limit in site.toml raised.",
     )
-
-
-def _account() -> str:
-    try:
-        return getpass.getuser()
-    except (OSError, KeyError):
-        return "unknown account"
 
 
 def _plans(arguments: argparse.Namespace, site: Site, name: str) -> tuple[PlanSettings, ...]:

@@ -7,6 +7,7 @@ import os
 from typing import Final, NoReturn, TypeAlias
 
 import qcreport
+from qcreport.cli import parser_records
 from qcreport.errors import UsageError
 
 COMMANDS: Final[dict[str, str]] = {
@@ -20,8 +21,7 @@ COMMANDS: Final[dict[str, str]] = {
     "keys new": "keys_new",
     "verify": "verify",
     "extract": "extract",
-    "records list": "records_list",
-    "records check": "records_check",
+    **parser_records.COMMANDS,
     "watch": "watch",
     "demo": "demo",
 }
@@ -37,6 +37,7 @@ Setting up
   site new DIR              make a site: folders, settings, rules
   keys new                  make the key that seals, or a person's key
   config check              read all settings and say every fault at once
+  config approve PLAN       approve a plan with its layout and rules, by a person's key
   plan propose | size       draft a layout and a plan from an export; how many results a difference needs
   layout try EXPORT         show what would be read from an export, cell by cell
   rules show [TABLE]        print a decision table
@@ -45,6 +46,9 @@ Auditors
   verify REPORT.pdf         seal, attachments and numbers, from the file alone
   extract REPORT.pdf DIR    write the attached export, settings and result
   records list | check      what was reported; whether anything was changed
+  records export DIR        a period as one folder: reports, originals, ledger, how to check them
+  records import FILE…      past exports into the store, without reports
+  records withdraw NUMBER   withdraw a report, with the reason
 
 Service
   watch [--once]            take every export dropped into the inbox
@@ -139,6 +143,7 @@ def _setting_up(commands: Commands) -> None:
     p.add_argument("--days", type=int, default=730, help="days until the certificate ends (730)")
     config = _group(commands, "config", "Check settings.")
     _add(config, "config check", "Read all settings; say every fault at once.", site=True, json=True)
+    parser_records.add_approve(config, _add)
     plan = _group(commands, "plan", "Draft plans.")
     p = _add(plan, "plan propose", "Draft a layout and a plan from an export.", site=True, json=False)
     p.add_argument("export", metavar="EXPORT", help="an export with values; nothing is recorded")
@@ -181,8 +186,7 @@ def _auditors(commands: Commands) -> None:
     p.add_argument("report", metavar="REPORT.pdf")
     p.add_argument("dir", metavar="DIR", help="where to; nothing there is overwritten")
     records = _group(commands, "records", "Look into the records.")
-    _add(records, "records list", "List reports.", site=True, json=True)
-    _add(records, "records check", "Find anything changed, dropped or missing.", site=True, json=True)
+    parser_records.add_records(records, _add)
 
 
 def _service(commands: Commands) -> None:

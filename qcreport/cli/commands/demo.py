@@ -49,10 +49,13 @@ def run(arguments: argparse.Namespace) -> int:
     print(f"{len(examples)} exports dropped into {site.folders.inbox}\n")
     audience = TerminalAudience()
     with opened(site, now, workers=site.workers) as work:
-        serve(work, now, audience, once=True)
+        counts = serve(work, now, audience, once=True)
     reports = [o for h in audience.handled_exports for o in h.outcomes if isinstance(o, Reported)]
     all_hold = _verify_all(site, reports)
-    print(f"\n{len(reports)} reports, {len(audience.refused)} refused, {time.monotonic() - started:.0f} s.")
+    print(
+        f"\n{len(reports)} reports, {len(audience.refused)} refused, {counts.failed} failed, "
+        f"{time.monotonic() - started:.0f} s."
+    )
     print("Open:")
     for report in reports:
         print(f"  {report.path}")
@@ -61,7 +64,7 @@ def run(arguments: argparse.Namespace) -> int:
     print(f"Next: drop an export into {root}/inbox and run qcreport watch --once --site {root}")
     print(f"      or change a plan in {root}/config/plans; a reported export then needs a reason:")
     print(f'      qcreport compare EXPORT --reason "…" --site {root}')
-    return DONE if all_hold else ANSWER_IS_NO
+    return DONE if all_hold and not counts.failed else ANSWER_IS_NO
 
 
 def _demo_site(root: Path) -> Site:

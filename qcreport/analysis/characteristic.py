@@ -5,6 +5,7 @@ from __future__ import annotations
 from qcreport.analysis.comparable import Comparable
 from qcreport.analysis.contrasts import estimated_contrasts
 from qcreport.analysis.description import letters, normality, overall_effect, pair_effects
+from qcreport.analysis.design_rate import design_rate
 from qcreport.analysis.flags import flag
 from qcreport.analysis.left_out import groups_without, units_left_out, with_left_out
 from qcreport.analysis.outcome import Outcome, Question, decide, sensitivity
@@ -71,6 +72,7 @@ def characteristic_result(
         contrasts=contrasts,
         flagged=flag(groups, outcome, question),
         answer=outcome.answer,
+        error_rate=design_rate(outcome, question),
         left_out=with_left_out(outcome, measurements, question),
     )
     return result, missing if comparison is None else (*comparison.notices, *missing)

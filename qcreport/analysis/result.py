@@ -13,6 +13,7 @@ from qcreport.analysis.left_out_result import LeftOutResult
 from qcreport.analysis.provenance import NO_PROVENANCE, Provenance
 from qcreport.canonical import finite_or_none
 from qcreport.measurements import Censoring, Notice
+from qcreport.rates.at_hand import ErrorRate
 from qcreport.rules.evidence import Check, FactEvidence, RuleApplied, TraceStep
 from qcreport.rules.facts import NUMBERS
 
@@ -379,6 +380,8 @@ class CharacteristicResult:
     """The plan's contrasts that could be estimated, plan order."""
     answer: str
     """Code of the most serious pair."""
+    error_rate: ErrorRate | None = None
+    """Simulated error rate of the choice at these sizes; None in results of versions before."""
     left_out: LeftOutResult | None = None
     """What a person left out, and the answers with it; None where nothing was."""
 
@@ -425,6 +428,7 @@ class CharacteristicResult:
             "flagged": [f.to_json() for f in self.flagged],
             "answer": self.answer,
             "contrasts": [c.to_json() for c in self.contrasts],
+            "error_rate": None if self.error_rate is None else self.error_rate.to_json(),
             "left_out": None if self.left_out is None else self.left_out.to_json(),
         }
 

@@ -107,6 +107,8 @@ def _model(
         identity=words.identity_rows(context.report_number, context.revision, made),
         letterhead=_letterhead(context, words),
         running=_running(context, words),
+        closing_heading=words.CAUTIONS,
+        closing=words.cautions(),
         first=first_page(all_numbers, plan, measurements, result, context, drawn),
         sections=tuple(s for s in sections if s is not None),
         unprintable=unprintable,

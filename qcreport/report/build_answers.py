@@ -44,6 +44,8 @@ def pair_sentence(pair: PairResult, numbers: Numbers, *, margin: str) -> str:
     at_once = words.at_once(with_reference=numbers.result.reference is not None)
     if pair.answer == "not_compared":
         return words.pair_not_compared(pair.first, pair.second)
+    if not view.has_interval and numbers.result_has_limits:
+        return _by_ranks_alone(view, numbers, at_once, margin)
     range_text = numbers.range_with_unit(drawn)
     if pair.answer == "not_settled":
         text = words.not_settled(drawn.first, drawn.second, range_text, at_once, margin, ratio=numbers.log)
@@ -62,19 +64,34 @@ def pair_sentence(pair: PairResult, numbers: Numbers, *, margin: str) -> str:
     return words.open_beyond(stem, margin)
 
 
+def _by_ranks_alone(view: PairView, numbers: Numbers, at_once: str, margin: str) -> str:
+    """Return the sentence of a pair of which limits leave no interval."""
+    words, p = numbers.words, numbers.said_p(view.pair.p)
+    if view.answer != "different":
+        return words.not_settled_by_limits(view.first, view.second, p, at_once, margin)
+    stem = words.by_direction(_relation(view, numbers), p, at_once)
+    if view.has_margin:
+        return words.direction_against_margin(stem, margin)
+    return words.direction_no_margin(stem)
+
+
 def _stem(view: PairView, numbers: Numbers, at_once: str) -> str:
+    amount = numbers.amount(view.difference)
+    relation = _relation(view, numbers)
+    return numbers.words.by_amount(relation, amount, numbers.range(view), at_once, ratio=numbers.log)
+
+
+def _relation(view: PairView, numbers: Numbers) -> str:
     reference = numbers.result.reference
     lower_speaks = reference is None or view.first == reference
     subject, other = (view.second, view.first) if lower_speaks else (view.first, view.second)
-    relation = numbers.words.relation(
+    return numbers.words.relation(
         subject,
         other,
         lower=lower_speaks,
         is_reference=reference is not None and other == reference,
         typically=numbers.ranks,
     )
-    amount = numbers.amount(view.difference)
-    return numbers.words.by_amount(relation, amount, numbers.range(view), at_once, ratio=numbers.log)
 
 
 def first_page_answer(numbers: Numbers, *, most: int, title: str, target: str, first_use: bool) -> Answer:

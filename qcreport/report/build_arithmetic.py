@@ -59,8 +59,7 @@ def _overall(overall: Overall, numbers: Numbers) -> str:
         digits = max(1, min(overall.supported_digits, 4))
         df = ", ".join(_df(d) for d in overall.df)
         statistic = f"{letter}({df}) = {significant(overall.statistic, digits)}"
-    p = MISSING if overall.p is None else numbers.p(overall.p)
-    said = f"= {p}" if p[0].isdigit() else p
+    said = MISSING if overall.p is None else numbers.said_p(overall.p)
     return numbers.words.overall_line(numbers.words.overall(overall.name), statistic, said)
 
 

@@ -154,7 +154,7 @@ def field_boxes(words: Words, fingerprint_sha256: str) -> tuple[FieldBox, ...]:
         description=words.seal_description(),
     )
     people = tuple(
-        FieldBox(name=name, role=role, text="", entries=words.entries(meaning), description=description)
-        for name, (role, meaning, description) in zip(("Reviewed", "Authorised"), words.roles(), strict=True)
+        FieldBox(name=name, role=role, text="", entries=words.entries(), description=description)
+        for name, (role, description) in zip(("Reviewed", "Authorised"), words.roles(), strict=True)
     )
     return (seal, *people)

@@ -65,6 +65,7 @@ def checking_section(context: Context, words: Words) -> Section:
         anchor="checking",
         heading=words.CHECKING,
         blocks=(
+            Paragraph(text=words.checking_intro()),
             Steps(rows=words.check_steps(context.report_number, export_file)),
             Facts(rows=((words.fingerprint_line(), fingerprint),), digests=True),
             Subheading(text=words.attachments_intro()),
@@ -75,9 +76,9 @@ def checking_section(context: Context, words: Words) -> Section:
 
 
 def terms_section(words: Words) -> Section:
-    """Return what the words mean, and the cautions that hold for every report."""
+    """Return what the words mean."""
     return Section(
         anchor="terms",
         heading=words.TERMS,
-        blocks=(Facts(rows=words.terms()), *(Paragraph(text=t, note=True) for t in words.cautions())),
+        blocks=(Paragraph(text=words.terms_intro()), Facts(rows=words.terms())),
     )

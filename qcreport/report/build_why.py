@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from itertools import groupby
 
-from qcreport.analysis.result import CharacteristicResult, Check
+from qcreport.analysis.result import CharacteristicResult, Check, TraceStep
 from qcreport.measurements import MeasurementSet
 from qcreport.plan.model import ComparisonPlan
 from qcreport.report.blocks import Block, Column, Paragraph, Section, Subheading, Table
 from qcreport.report.numbers import MISSING, Numbers
 from qcreport.report.rounding import fixed, shortest, significant, trimmed
+from qcreport.report.words_en import Words
 
 TEXTBOOK = "textbook"
 
@@ -43,10 +45,19 @@ def _characteristic(numbers: Numbers) -> list[Block]:
         blocks.append(Paragraph(text=words.not_a_gate()))
         columns = _columns(words.check_heads(), (30, 12, 11, 11, 14, 22), (1, 2, 3, 4))
         blocks.append(Table(columns=columns, rows=tuple(_check_row(c, numbers) for c in result.checks)))
-    if result.trace:
-        steps = "; ".join(words.trace_step(t.id, t.why.strip().rstrip(".")) for t in result.trace)
-        blocks.append(Paragraph(text=words.trace(f"{steps}."), note=True))
+    if tried := _trace_rows(result.trace, words):
+        blocks.append(Table(columns=_columns(words.trace_heads(), (50, 50), ()), rows=tried))
     return blocks
+
+
+def _trace_rows(trace: Sequence[TraceStep], words: Words) -> tuple[tuple[str, str], ...]:
+    """Return the rows tried, in order; neighbours that fail for one reason share a line."""
+    rows: list[tuple[str, str]] = []
+    passed = [t for t in trace if not t.applied]  # the row that decided stands in the first sentence
+    for why, steps in groupby(passed, key=lambda t: t.why.strip().rstrip(".")):
+        names = ", ".join(words.row_name(t.id) for t in steps)
+        rows.append((names, words.why_not(why)))
+    return tuple(rows)
 
 
 def _columns(heads: Sequence[str], shares: Sequence[int], numeric: Sequence[int]) -> tuple[Column, ...]:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections import Counter
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 from qcreport.analysis.result import CharacteristicResult, GroupResult, UnitValue
@@ -21,6 +21,12 @@ LABEL_SIZE = 8.5
 LABEL_MOST = 112.0
 TOP = 19.0
 MANY_GROUPS = 8
+LEFT_OUT = "left out"
+"""Mark of a value that a person left out: drawn, but counted nowhere."""
+READABLE = 6.0
+"""Height of one stroke in a stack, with the space to the next."""
+STACKS_MOST = 190.0
+"""Points that the stacks of all rows may take together."""
 _LEFTWARDS = frozenset({Censoring.BELOW, Censoring.AT_MOST, Censoring.NOT_DETECTED})
 
 
@@ -28,9 +34,9 @@ _LEFTWARDS = frozenset({Censoring.BELOW, Censoring.AT_MOST, Censoring.NOT_DETECT
 class _Frame:
     axis: Axis
     row_height: float
+    above: float
+    """Part of a row above its line."""
     bottom: float
-    stroke: float
-    """Height for a stack of equal values."""
     decimals: int
     words: FigureWords
 
@@ -62,7 +68,7 @@ def values_panel(
     frame = _frame(result, groups, decimals, words)
     shapes: list[Shape] = [*_limits(result, frame), *_reference_line(result, frame)]
     for index, group in enumerate(groups):
-        shapes += _row(group, TOP + (index + 0.62) * frame.row_height, frame, keys)
+        shapes += _row(group, TOP + index * frame.row_height + frame.above, frame, keys)
     shapes.append(Label(x=WIDTH, y=10, text=words.mean_heading(), anchor="end", style="note"))
     shapes += _axis(result, frame)
     shapes += _scale_bar(result, frame, margin_text)
@@ -100,15 +106,25 @@ def _frame(
     labels = max((width_of(line, LABEL_SIZE) for g in groups for line in _label(g)), default=0.0)
     means = [fixed(g.mean, decimals + 1) for g in groups if g.mean is not None]
     numbers = max((width_of(m, LABEL_SIZE) for m in means), default=0.0)
-    row_height = 22.0 if len(groups) <= MANY_GROUPS else 17.0
+    above, below = _row_parts(groups)
+    row_height = above + below
     return _Frame(
         axis=Axis(low=low, high=high, left=labels + 10, right=WIDTH - max(numbers, 18) - 12, logarithmic=log),
         row_height=row_height,
+        above=above,
         bottom=TOP + row_height * max(len(groups), 1) + 3,
-        stroke=row_height * 0.62 - 1,
         decimals=decimals,
         words=words,
     )
+
+
+def _row_parts(groups: Sequence[GroupResult]) -> tuple[float, float]:
+    """Return the heights of a row above and below its line; a stack of equal values asks for more above."""
+    height = 22.0 if len(groups) <= MANY_GROUPS else 17.0
+    stacks = [max(Counter(u.value for u in g.units).values(), default=1) for g in groups]
+    wanted = 1 + READABLE * max(stacks, default=1)
+    most = max(height * 0.62, STACKS_MOST / max(len(groups), 1))
+    return min(max(height * 0.62, wanted), most), height * 0.38
 
 
 def _label(group: GroupResult) -> tuple[str, ...]:
@@ -127,7 +143,7 @@ def _row(group: GroupResult, y: float, frame: _Frame, keys: Mapping[str, str]) -
     for unit in group.units:
         if not math.isfinite(unit.value) or (axis.logarithmic and unit.value <= 0):
             continue
-        stroke = min(8.0, frame.stroke / ties[unit.value] - 1)
+        stroke = min(8.0, (frame.above - 1) / ties[unit.value] - 1)
         foot = y - 1 - seen[unit.value] * (stroke + 1)
         seen[unit.value] += 1
         shapes += _value(unit, axis.inside(unit.value), foot, stroke, keys)
@@ -149,7 +165,8 @@ def _value(unit: UnitValue, x: float, foot: float, stroke: float, keys: Mapping[
             Line(x1=x, y1=foot - stroke, x2=x, y2=foot, style="value"),
             Outline(points=barb, closed=False, style="arrow"),
         ]
-    shapes: list[Shape] = [Line(x1=x, y1=foot - stroke, x2=x, y2=foot, style="value")]
+    style = "left-out" if LEFT_OUT in unit.marks else "value"
+    shapes: list[Shape] = [Line(x1=x, y1=foot - stroke, x2=x, y2=foot, style=style)]
     key = next((keys[c] for c in unit.cells if c in keys), None)
     if key is not None:
         shapes.append(Ring(x=x, y=foot - stroke / 2, radius=stroke / 2 + 2.2, style="ring"))

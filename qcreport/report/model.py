@@ -118,5 +118,8 @@ class ReportModel:
     running: Running
     first: FirstPage
     sections: tuple[Section, ...]
+    closing_heading: str
+    closing: tuple[str, ...]
+    """Cautions that hold for every report; the end mark stands below them."""
     unprintable: tuple[str, ...]
     """Characters that the fonts lack and that are printed as U+XXXX."""

@@ -48,6 +48,11 @@ class Numbers:
         """Return whether the procedure compares ranks."""
         return self.result.procedure in RANKS
 
+    @property
+    def result_has_limits(self) -> bool:
+        """Return whether a value is known only by a limit."""
+        return any(g.censored for g in self.result.groups)
+
     def value(self, value: float | None) -> str:
         """Return a value as the export shows it."""
         return MISSING if value is None or not math.isfinite(value) else fixed(value, self.decimals)
@@ -85,7 +90,9 @@ class Numbers:
             return self.words.between(low, high)
         if low is not None:
             return self.words.at_least(low)
-        return self.words.no_range() if high is None else self.words.at_most(high)
+        if high is not None:
+            return self.words.at_most(high)
+        return self.words.open_by_limits() if self.result_has_limits else self.words.no_range()
 
     def range_with_unit(self, view: PairView) -> str:
         """Return the interval of a pair with its unit."""
@@ -113,6 +120,11 @@ class Numbers:
         if value is None or not math.isfinite(value):
             return MISSING
         return probability(value, near=self.result.alpha)
+
+    def said_p(self, value: float) -> str:
+        """Return a tail probability for a sentence, after the letter p."""
+        text = self.p(value)
+        return f"= {text}" if text[0].isdigit() else text
 
     def level(self) -> str:
         """Return the simultaneous level, e.g. `95 %`."""

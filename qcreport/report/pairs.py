@@ -52,6 +52,11 @@ class PairView:
         return self.low is not None or self.high is not None
 
     @property
+    def only_direction(self) -> bool:
+        """Return whether limits leave neither difference nor interval, only who is typically higher."""
+        return not self.has_interval and not math.isfinite(self.difference)
+
+    @property
     def has_margin(self) -> bool:
         """Return whether a margin is set on at least one side."""
         return self.margin[0] is not None or self.margin[1] is not None
@@ -88,10 +93,17 @@ def as_computed(pair: PairResult, result: CharacteristicResult) -> PairView:
     )
 
 
+def is_lower(pair: PairResult, result: CharacteristicResult) -> bool:
+    """Return whether the first group is the lower one; by the ranks where limits leave no difference."""
+    if math.isfinite(pair.difference):
+        return pair.difference < null_of(result)
+    return pair.statistic is not None and pair.statistic < 0
+
+
 def higher_first(pair: PairResult, result: CharacteristicResult) -> PairView:
     """Return the pair with the higher group first."""
     view = as_computed(pair, result)
-    if not pair.difference < null_of(result):
+    if not is_lower(pair, result):
         return view
     log = is_log(result)
     below, above = view.margin

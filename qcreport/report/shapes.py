@@ -10,6 +10,7 @@ STYLES: dict[str, str] = {
     "row": 'stroke="#cccccc" stroke-width="0.5"',
     "axis": 'stroke="#111111" stroke-width="0.6"',
     "value": 'stroke="#222222" stroke-width="1"',
+    "left-out": 'stroke="#777777" stroke-width="0.8" stroke-dasharray="1.2 1"',
     "reference": 'stroke="#444444" stroke-width="0.7" stroke-dasharray="6 2 1.2 2"',
     "limit": 'stroke="#111111" stroke-width="1.1"',
     "hatch": 'stroke="#888888" stroke-width="0.4"',

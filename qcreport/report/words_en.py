@@ -23,5 +23,6 @@ class Words(AnswerWords, SectionWords, ArithmeticWords, CheckingWords, PageWords
     ORIGIN = "Where this comes from"
     CHECKING = "How to check without our software"
     TERMS = "Terms"
+    CAUTIONS = "Cautions"
     BASIS = "What it rests on"
     SIGNING = "Signatures"

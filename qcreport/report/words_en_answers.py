@@ -28,6 +28,33 @@ class AnswerWords(FigureWords):
         """Return what stands where there is no interval."""
         return "no interval"
 
+    def open_by_limits(self) -> str:
+        """Return what stands for an interval where values are known only by a limit."""
+        return "open: known only by a limit"
+
+    def by_direction(self, relation: str, p: str, at_once: str) -> str:
+        """Return a relation of which limits leave the direction only."""
+        return (
+            f"{relation} (p {p}, {at_once}). Values known only by a limit leave no interval, so by how much "
+            "is open"
+        )
+
+    def direction_no_margin(self, stem: str) -> str:
+        """Return the sentence of `different` without a margin where only the direction is known."""
+        return f"{stem}; no margin is set."
+
+    def direction_against_margin(self, stem: str, margin: str) -> str:
+        """Return the sentence of `different` with a margin where only the direction is known."""
+        return f"{stem}, also against the margin of {margin.rstrip(',')}."
+
+    def not_settled_by_limits(self, first: str, second: str, p: str, at_once: str, margin: str) -> str:
+        """Return the sentence of an open pair without any interval."""
+        against = f" against the margin of {margin.rstrip(',')}" if margin else ""
+        return (
+            f"{first} and {second}: not settled{against} (p {p}, {at_once}); values known only by a limit "
+            "leave no interval."
+        )
+
     def margin(self, below: str | None, above: str | None, unit: str) -> str:
         """Return a margin: one number where even, else by direction."""
         if below is None and above is None:

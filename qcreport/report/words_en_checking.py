@@ -69,7 +69,7 @@ class CheckingWords(FigureWords):
 
     def mark(self, mark: str) -> str:
         """Return the state of a cell."""
-        return {"struck": "struck out", "commented": "commented", "hidden": "hidden"}.get(mark, mark)
+        return {"struck": "struck out"}.get(mark, mark)
 
     def flagged_line(
         self, key: str, group: str, value: str, cell: str, test: str, p: str, effect: str
@@ -171,28 +171,34 @@ class CheckingWords(FigureWords):
         """Return what the seal's box says."""
         return f"Sealed by the laboratory’s service key; fingerprint {fingerprint}"
 
-    def roles(self) -> tuple[tuple[str, str, str], ...]:
-        """Return the personal fields: role, meaning, description."""
+    def roles(self) -> tuple[tuple[str, str], ...]:
+        """Return the personal fields: role with its meaning, description."""
         return (
             (
-                "Reviewed",
-                "reviewed for correctness",
+                "Reviewed for correctness",
                 "Signature of the reviewer: name, meaning, time with zone",
             ),
             (
-                "Authorised",
-                "authorised for issue",
+                "Authorised for issue",
                 "Signature of the authoriser: name, meaning, time with zone",
             ),
         )
 
-    def entries(self, meaning: str) -> tuple[str, ...]:
+    def entries(self) -> tuple[str, ...]:
         """Return the ruled entries of a signature box."""
-        return ("name", f"meaning: {meaning}", "time with zone")
+        return "name", "meaning", "time, zone"
 
     def seal_description(self) -> str:
         """Return the seal field for readers who do not see it."""
         return "Seal of the laboratory’s service key"
+
+    def checking_intro(self) -> str:
+        """Return what the steps need."""
+        return "Common tools are enough: a PDF reader, and for the command lines poppler and openssl."
+
+    def terms_intro(self) -> str:
+        """Return what the table of terms is."""
+        return "The words of this report, as it uses them."
 
     def check_steps(self, number: str, export_file: str) -> tuple[tuple[str, str], ...]:
         """Return the steps an auditor takes with common tools."""

@@ -149,6 +149,7 @@ class SectionWords(FigureWords):
         procedure = f"{procedure[:1].upper()}{procedure[1:]}"
         if table == "plan" or row == "fixed_by_plan":
             return f"{procedure}, fixed in the plan before the comparison was made."
+        row = self.row_name(row)
         return f"{procedure}, chosen by row “{row}” of the rules table “{table}”, read from top to bottom."
 
     def rule_reason(self, reason: str, source: str) -> str:
@@ -164,13 +165,17 @@ class SectionWords(FigureWords):
             "it was shown or declared to be. The checks below are printed as they came out."
         )
 
-    def trace_step(self, row: str, why: str) -> str:
-        """Return one row of the table as tried."""
-        return f"{row}: {why}"
+    def trace_heads(self) -> tuple[str, ...]:
+        """Return the heads of the table of rows tried."""
+        return "Rows tried before, in order", "why they did not apply"
 
-    def trace(self, steps: str) -> str:
-        """Return the rows tried."""
-        return f"Rows tried in order. {steps}"
+    def row_name(self, row: str) -> str:
+        """Return the id of a row in words."""
+        return row.replace("_", " ").replace("-", " ")
+
+    def why_not(self, why: str) -> str:
+        """Return why a row did or did not apply."""
+        return why
 
     def textbook_rates(self) -> str:
         """Return the measured error rates of the table `textbook`."""

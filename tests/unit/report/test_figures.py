@@ -215,3 +215,18 @@ def test_long_names_are_broken_and_keep_head_and_tail() -> None:
     (one,) = lines_of("L" * 300, 8.5, 80, 1)
     assert width_of(one, 8.5) <= 80
     assert lines_of("", 8.5, 80, 2) == ("",)
+
+
+def test_stacked_values_keep_a_height_that_can_be_read() -> None:
+    data = {"LA-2403": [0.5, 0.5, 0.5, 0.7, 0.8, 0.9], "LB-2403": [0.5, 0.6, 0.7, 0.8, 0.9, 1.0]}
+    drawing = values(characteristic(data))
+    strokes = [s for s in drawing.shapes if isinstance(s, Line) and s.style == "value"]
+    assert min(s.y2 - s.y1 for s in strokes) >= 4.9
+
+
+def test_a_value_left_out_is_drawn_apart() -> None:
+    base = characteristic()
+    units = (dataclasses.replace(base.groups[0].units[0], marks=("left out",)), *base.groups[0].units[1:])
+    groups = (dataclasses.replace(base.groups[0], units=units), *base.groups[1:])
+    drawing = values(dataclasses.replace(base, groups=groups))
+    assert len([s for s in drawing.shapes if isinstance(s, Line) and s.style == "left-out"]) == 1

@@ -10,7 +10,7 @@ import re
 import pytest
 from scipy import stats
 
-from qcreport.analysis.result import NotCompared, Result, RuleApplied
+from qcreport.analysis.result import NotCompared, Result, RuleApplied, TraceStep
 from qcreport.measurements import Censoring, Notice
 from qcreport.plan.model import PROCEDURES, RANKS, Approval, Unit
 from qcreport.report.blocks import Cells, Facts, Formula, Paragraph, Section, Steps, Subheading, Table
@@ -206,11 +206,11 @@ def test_letters_are_shared_exactly_where_nothing_is_shown() -> None:
 def test_why_names_rule_facts_checks_rows_tried_declaration_and_approval() -> None:
     said = text_of(section(model_of(characteristic()), HEADINGS[1]))
     for part in (
-        "Tukey’s HSD, chosen by row “every-pair-similar-equal” of the rules table “default”",
+        "Tukey’s HSD, chosen by row “every pair similar equal” of the rules table “default”",
         "Rests on: Tukey (1953)",
         "sizes | equal | smallest n 8, largest 8 | export",
         "Median-centred Levene (Brown and Forsythe) | 1.210 | 3, 28 | 0.32 | 0.05 | description only",
-        "Rows tried in order. nothing-to-compare: four comparable groups",
+        "nothing to compare | four comparable groups",
         "Spread was declared similar by Ines Moreau on 2026-11-02: same rig",
         "Plan approved by Ines Moreau on 2026-11-02.",
         "near-normal data",
@@ -350,7 +350,7 @@ def test_the_export_travels_under_a_fixed_name(name: str, attached: str) -> None
 
 def test_every_caution_is_printed() -> None:
     model = model_of(characteristic())
-    said = text_of(section(model, HEADINGS[8])) + " ".join(model.first.cautions)
+    said = " ".join((*model.closing, *model.first.cautions))
     for part in (
         "supports and never replaces the release decision of the responsible person",
         "relates only to the items tested",
@@ -442,3 +442,19 @@ def test_a_rerun_gives_its_reason() -> None:
 def test_fixture_attachments_have_different_names() -> None:
     assert len({a.name for a in ATTACHMENTS}) == len(ATTACHMENTS)
     assert isinstance(result_of(characteristic()), Result)
+
+
+def test_rows_tried_are_said_in_words_once_a_reason_and_without_the_row_that_decided() -> None:
+    steps = (
+        TraceStep(id="too_few_groups", applied=False, why="needs groups < 2; here it is 4"),
+        TraceStep(id="censored_with_reference", applied=False, why="needs censored is some; here it is none"),
+        TraceStep(id="censored_every_pair", applied=False, why="needs censored is some; here it is none"),
+        TraceStep(id="similar_equal_sizes", applied=True, why="spread is similar"),
+    )
+    part = section(model_of(dataclasses.replace(characteristic(), trace=steps)), HEADINGS[1])
+    table = [b for b in part.blocks if isinstance(b, Table)][-1]
+    assert table.rows == (
+        ("too few groups", "needs groups < 2; here it is 4"),
+        ("censored with reference, censored every pair", "needs censored is some; here it is none"),
+    )
+    assert "_" not in text_of(part)

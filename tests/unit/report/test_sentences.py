@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import dataclasses
+import math
 
 import pytest
 
@@ -10,9 +11,10 @@ from qcreport.analysis.result import CharacteristicResult, PairResult
 from qcreport.plan.model import Groups
 from qcreport.report.build_answers import first_page_answer, pair_sentence, register_word
 from qcreport.report.numbers import Numbers
+from qcreport.report.pairs import higher_first
 from qcreport.report.words import words_for
 
-from .samples import VISCOSITY, characteristic, left_out_group
+from .samples import VISCOSITY, Margin, characteristic, left_out_group
 
 
 def numbers(result: CharacteristicResult, margin_text: str = "") -> Numbers:
@@ -189,3 +191,43 @@ def test_percent_margins_show_both_forms() -> None:
 )
 def test_register_and_mail_use_three_words(code: str, word: str) -> None:
     assert register_word(code) == word
+
+
+def by_limits(answer: str, statistic: float, margin: Margin = (-0.5, 0.5)) -> Numbers:
+    base = characteristic(procedure="steel_dwass", margin=margin)
+    pair = dataclasses.replace(
+        base.pairs[0],
+        difference=math.nan,
+        lower=None,
+        upper=None,
+        statistic=statistic,
+        p=0.004,
+        answer=answer,
+    )
+    groups = (dataclasses.replace(base.groups[0], censored=3, mean=None), *base.groups[1:])
+    return numbers(dataclasses.replace(base, groups=groups, pairs=(pair,)))
+
+
+def test_ranks_with_limits_say_who_is_typically_lower_and_that_by_how_much_is_open() -> None:
+    for statistic, said in (
+        (-2.9, "LA-2403 is typically lower than LB-2403"),
+        (2.9, "LB-2403 is typically lower"),
+    ):
+        found = by_limits("different", statistic)
+        text = pair_sentence(found.result.pairs[0], found, margin="0.5 MPa")
+        assert text.startswith(said)
+        assert "(p = 0.0040, all pairs at once)" in text
+        assert "leave no interval, so by how much is open, also against the margin of 0.5 MPa." in text
+        assert "–" not in text
+
+
+def test_ranks_with_limits_stay_open_without_a_margin_or_a_shown_difference() -> None:
+    found = by_limits("different", -2.9, (None, None))
+    assert "by how much is open; no margin is set." in pair_sentence(found.result.pairs[0], found, margin="")
+    found = by_limits("not_settled", -0.9)
+    text = pair_sentence(found.result.pairs[0], found, margin="0.5 MPa")
+    assert text.startswith("LA-2403 and LB-2403: not settled") or text.startswith(
+        "LB-2403 and LA-2403: not settled"
+    )
+    assert "no interval" in text
+    assert found.range(higher_first(found.result.pairs[0], found.result)) == "open: known only by a limit"

@@ -246,8 +246,10 @@ def _compare(
         reachable = law[1][-1] < alpha
         critical = max(v for v, chance in zip(*law, strict=True) if chance >= alpha) if reachable else None
     else:
-        p = tail(size)
-        reachable = bool((tail(np.array([_largest_possible(design, pair) for pair in pairs])) < alpha).any())
+        different, place = np.unique(size, return_inverse=True)  # ranks repeat their statistics
+        p = tail(different)[place]
+        furthest = max(_largest_possible(design, pair) for pair in pairs)
+        reachable = bool(tail(np.array([furthest]))[0] < alpha)
         critical = quantile()
     comparisons = tuple(
         _pair(design, pair, float(value), float(tail_area), critical, sign)

@@ -25,6 +25,8 @@ def by_count(
         raise DegenerateDataError("The number of groups or comparisons must be a whole number.")
     if counts.size and counts.min() < smallest:
         raise TooFewObservationsError(f"At least {smallest} groups or comparisons are needed.")
+    if counts.ndim == 0:
+        return [make(int(counts))], np.zeros((), dtype=np.intp), ()
     distinct, index = np.unique(counts, return_inverse=True)
     return [make(int(count)) for count in distinct], index.reshape(counts.shape), counts.shape
 
@@ -40,7 +42,7 @@ def upper_tail(statistic: ArrayLike, laws: list[Law], law_index: Index, df: Arra
     result = np.where(q > 0.0, 0.0, 1.0)
     inner = (q > 0.0) & np.isfinite(q)
     if inner.any():
-        result[inner] = tail_area(laws, index[inner], q[inner], nu[inner]).area
+        result[inner] = tail_area(laws, index[inner], q[inner], nu[inner], slope=False).area
     return give_back(result)
 
 

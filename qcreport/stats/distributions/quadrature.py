@@ -23,6 +23,8 @@ SMALLEST_P = 1e-300
 _LOCAL_NODES = 40
 _LOCAL_STEP = 0.5
 """Nodes for large df, in standard deviations of log s."""
+_KNOWN_DF = 1e18
+"""From here a finite df changes no tail down to 1e-300 by more than rounding does."""
 
 
 class Tail(NamedTuple):
@@ -34,8 +36,8 @@ class Tail(NamedTuple):
     """d area / d log q, never positive."""
 
 
-def tail_area(laws: Sequence[Law], law_of_row: Index, q: Array, df: Array) -> Tail:
-    """Return P(R / s > q) and its slope in log q.
+def tail_area(laws: Sequence[Law], law_of_row: Index, q: Array, df: Array, *, slope: bool = True) -> Tail:
+    """Return P(R / s > q) and, where asked for, its slope in log q.
 
     Parameters
     ----------
@@ -45,24 +47,32 @@ def tail_area(laws: Sequence[Law], law_of_row: Index, q: Array, df: Array) -> Ta
         Index into `laws` for each row.
     q, df : (n,) floats
         Statistic > 0, finite; degrees of freedom > 0, may be infinite.
+    slope : bool
+        Whether the slope is wanted; else it is zero.
 
     Returns
     -------
     Tail
-        Two arrays (n,). The slope of an infinite df is taken by a central difference.
+        Two arrays (n,). The slope of a large df is taken by a central difference.
     """
     tabled = df <= scale.LARGEST_TABLED_DF
     if tabled.all():
-        return _bounded(*_from_tables(laws, law_of_row, q, df))
-    area, slope = np.empty(q.shape), np.empty(q.shape)
+        return _bounded(*_from_tables(laws, law_of_row, q, df, slope))
+    area, slopes = np.empty(q.shape), np.zeros(q.shape)
     rows = np.flatnonzero(tabled)
     if rows.size:
-        area[rows], slope[rows] = _from_tables(laws, law_of_row[rows], q[rows], df[rows])
+        area[rows], slopes[rows] = _from_tables(laws, law_of_row[rows], q[rows], df[rows], slope)
     for number, law in enumerate(laws):
-        rows = np.flatnonzero(~tabled & (law_of_row == number))
-        if rows.size:
-            area[rows], slope[rows] = _from_local_nodes(law, q[rows], df[rows])
-    return _bounded(area, slope)
+        of_law = ~tabled & (law_of_row == number)
+        for rows, untabled in (
+            (np.flatnonzero(of_law & (df < _KNOWN_DF)), _from_local_nodes),
+            (np.flatnonzero(of_law & (df >= _KNOWN_DF)), _from_law),
+        ):
+            if rows.size:
+                area[rows] = untabled(law, q[rows], df[rows])
+                if slope:
+                    slopes[rows] = _slope_by_difference(law, q[rows], df[rows])
+    return _bounded(area, slopes)
 
 
 def _bounded(area: Array, slope: Array) -> Tail:
@@ -85,14 +95,14 @@ class _Windows(NamedTuple):
     """Tables laid end to end."""
 
 
-def _from_tables(laws: Sequence[Law], law_of_row: Index, q: Array, df: Array) -> Tail:
+def _from_tables(laws: Sequence[Law], law_of_row: Index, q: Array, df: Array, with_slope: bool) -> Tail:
     log_q = np.log(q)
     coarsest = np.array([coarsest_level(law) for law in laws], dtype=np.intp)
     level = np.maximum(scale.levels(df), coarsest[law_of_row])
     step = scale.STEPS[level]
     windows = _windows(laws, law_of_row, level, log_q, df)
     start = windows.first * step - log_q  # u at the first node
-    area, slope = np.empty(q.shape), np.empty(q.shape)
+    area, slope = np.empty(q.shape), np.zeros(q.shape)
     for rows, length, depth in row_blocks(windows.length, level):
         offsets = scale.STEPS[depth] * np.arange(length)
         place = (windows.base[rows] + windows.first[rows])[:, None] + np.arange(length)
@@ -104,8 +114,9 @@ def _from_tables(laws: Sequence[Law], law_of_row: Index, q: Array, df: Array) ->
         np.exp(part, out=part)
         part *= windows.flat.take(place)
         area[rows] = part.sum(axis=-1)
-        part *= grown
-        slope[rows] = part.sum(axis=-1)
+        if with_slope:
+            part *= grown
+            slope[rows] = part.sum(axis=-1)
     constant = scale.density_constant(df) * step
     return Tail(area * constant, np.minimum(slope * df * constant, 0.0))
 
@@ -120,15 +131,21 @@ def _windows(laws: Sequence[Law], law_of_row: Index, level: Index, log_q: Array,
     high = np.minimum(log_q + scale.right_width(df), np.logaddexp(peak, log_reach))
     first = np.floor(low / step).astype(np.intp)
     length = np.ceil((high - low) / step).astype(np.intp) + 2
+    code_of_row = law_of_row * scale.STEPS.size + level
+    codes = distinct(code_of_row)
+    if len(codes) == 1:  # one design asks, as in a single table of pairs
+        held = table(laws[codes[0] // scale.STEPS.size], codes[0] % scale.STEPS.size)
+        start, stop = _span(first, length, held.lowest)
+        return _Windows(
+            first, length, np.full_like(first, -start), np.zeros_like(first), held.part(start, stop)
+        )
     base, lowest = np.empty_like(first), np.empty_like(first)
     parts: list[Array] = []
     size = 0
-    code_of_row = law_of_row * scale.STEPS.size + level
-    for code in distinct(code_of_row):
+    for code in codes:
         rows = code_of_row == code
         held = table(laws[code // scale.STEPS.size], code % scale.STEPS.size)
-        start = max(int(first[rows].min()), held.lowest)
-        stop = max(int((first[rows] + length[rows]).max()) + LENGTH_UNIT, start)
+        start, stop = _span(first[rows], length[rows], held.lowest)
         parts.append(held.part(start, stop))
         base[rows] = size - start
         lowest[rows] = size
@@ -136,17 +153,26 @@ def _windows(laws: Sequence[Law], law_of_row: Index, level: Index, log_q: Array,
     return _Windows(first, length, base, lowest, np.concatenate(parts))
 
 
-def _from_local_nodes(law: Law, q: Array, df: Array) -> Tail:
-    """Large or infinite df: the law at nodes about the peak of the integrand."""
-    finite = np.minimum(df, 1e300)
-    sd = 1.0 / np.sqrt(2.0 * finite)
-    centre = scale.peak(finite, np.log(q), law.decay) - np.log(q)
+def _span(first: Index, length: Index, lowest: int) -> tuple[int, int]:
+    """Return the first and the last grid index that rows may read."""
+    start = max(int(first.min()), lowest)
+    return start, max(int((first + length).max()) + LENGTH_UNIT, start)
+
+
+def _from_local_nodes(law: Law, q: Array, df: Array) -> Array:
+    """Large df: the law at nodes about the peak of the integrand."""
+    sd = 1.0 / np.sqrt(2.0 * df)
+    centre = scale.peak(df, np.log(q), law.decay) - np.log(q)
     offsets = (np.arange(_LOCAL_NODES + 1) - _LOCAL_NODES // 2) * _LOCAL_STEP
     u = centre[:, None] + offsets * sd[:, None]
     tail = law.upper_tail((q[:, None] * np.exp(u)).ravel()).reshape(u.shape)
-    part = np.exp(-finite[:, None] * _excess(u)) * tail
-    constant = _LOCAL_STEP * sd * scale.density_constant(finite)
-    return Tail(part.sum(axis=-1) * constant, _slope_by_difference(law, q, finite))
+    part = np.exp(-df[:, None] * _excess(u)) * tail
+    return np.asarray(part.sum(axis=-1) * _LOCAL_STEP * sd * scale.density_constant(df))
+
+
+def _from_law(law: Law, q: Array, df: Array) -> Array:
+    """Infinite df, or so many that the scatter is as good as known: the law itself."""
+    return law.upper_tail(q)
 
 
 def _excess(u: Array) -> Array:
@@ -160,6 +186,7 @@ def _excess(u: Array) -> Array:
 
 def _slope_by_difference(law: Law, q: Array, df: Array) -> Array:
     """Return an approximate slope in log q, enough for Newton's method: that of the law at the peak."""
-    at = q * np.exp(scale.peak(df, np.log(q), law.decay) - np.log(q))
+    finite = np.minimum(df, 1e300)
+    at = q * np.exp(scale.peak(finite, np.log(q), law.decay) - np.log(q))
     h = 1e-4
     return np.asarray((law.upper_tail(at * (1.0 + h)) - law.upper_tail(at * (1.0 - h))) / (2.0 * h))

@@ -324,7 +324,8 @@ def change_a_row(site: Site) -> None:
         for name, _ in triggers:
             connection.execute(f'DROP TRIGGER "{name}"')
         changed = connection.execute(
-            "UPDATE ledger SET facts = replace(facts, 'lap-shear-2411', 'lap-shear-2410') WHERE sequence = 1"
+            "UPDATE ledger SET facts = replace(facts, 'lap-shear-2411', 'lap-shear-2410') "
+            "WHERE kind = 'received' AND facts LIKE '%lap-shear-2411%'"
         )
         assert changed.rowcount == 1
         for _, sql in triggers:

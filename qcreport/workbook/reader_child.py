@@ -10,7 +10,7 @@ from __future__ import annotations
 import gc
 import json
 import sys
-from collections.abc import Iterable
+from collections.abc import Iterator
 from typing import Any
 
 from qcreport.errors import ConfigError, ExportRefusedError
@@ -44,8 +44,8 @@ def limit_this_process(limits: Limits) -> None:
         resource.setrlimit(kind, (allowed, allowed))
 
 
-def read(header: dict[str, Any], data: bytes) -> Iterable[bytes]:
-    """Return the lines that answer one request."""
+def read(header: dict[str, Any], data: bytes) -> Iterator[bytes]:
+    """Yield the lines that answer one request."""
     limits = Limits(**header["limits"])
     try:
         layout = parse_layout(header["layout_text"].encode("utf-8"), header["layout_file"])
@@ -56,11 +56,11 @@ def read(header: dict[str, Any], data: bytes) -> Iterable[bytes]:
             limits=limits,
             second_look=header["second_look"] is True,
         )
-        return list(encode(result))
+        yield from encode(result)
     except ExportRefusedError as refusal:
-        return [encode_refusal(refusal)]
+        yield encode_refusal(refusal)
     except (MemoryError, RecursionError):
-        return [encode_refusal(refuse_for_memory(limits))]
+        yield encode_refusal(refuse_for_memory(limits))
 
 
 def refuse_for_memory(limits: Limits) -> ExportRefusedError:
@@ -81,11 +81,10 @@ def main() -> int:
     gc.disable()  # nothing here makes cycles, and millions of cells would be looked through again and again
     data = sys.stdin.buffer.read()
     try:
-        lines = read(header, data)
+        for line in read(header, data):
+            sys.stdout.buffer.write(line)
     except ConfigError:
         return EXIT_LAYOUT
-    for line in lines:
-        sys.stdout.buffer.write(line)
     sys.stdout.buffer.flush()
     return 0
 

@@ -27,6 +27,8 @@ class RowLabels:
             if name not in table.sources and source.kind is not SourceKind.HEADER_CELLS
         }
         self._groups = GroupCells(book, table, notices)
+        self._at = 0
+        self._of_row: dict[str, Label | None] = {}
 
     def _constant(self, name: str, source: Source) -> Label | None:
         """Return a name that is the same for all rows of the sheet."""
@@ -57,6 +59,14 @@ class RowLabels:
         return self._sheet.cell(row, column) if column is not None else None
 
     def _label(self, name: str, row: int) -> Label | None:
+        """Return a name of a row; its values share one object."""
+        if row != self._at:
+            self._at, self._of_row = row, {}
+        if name not in self._of_row:
+            self._of_row[name] = self._found_label(name, row)
+        return self._of_row[name]
+
+    def _found_label(self, name: str, row: int) -> Label | None:
         column = self._table.sources.get(name)
         if column is None:
             return self._constants.get(name)

@@ -7,11 +7,12 @@ import os
 from typing import Final, NoReturn, TypeAlias
 
 import qcreport
-from qcreport.cli import parser_records
+from qcreport.cli import parser_records, parser_signing
 from qcreport.errors import UsageError
 
 COMMANDS: Final[dict[str, str]] = {
     "compare": "compare",
+    **parser_signing.COMMANDS,
     "site new": "site_new",
     "config check": "config_check",
     "plan propose": "plan_propose",
@@ -32,6 +33,7 @@ qcreport: from an instrument's Excel export to a sealed report of which batches 
 
 Every day
   compare EXPORT            one export through the whole pipeline to a sealed report
+  sign [REPORT]             sign a report as reviewed or authorised, or return it; else what waits
 
 Setting up
   site new DIR              make a site: folders, settings, rules
@@ -78,6 +80,7 @@ def build_parser() -> argparse.ArgumentParser:
     parser.add_argument("--version", action="version", version=f"qcreport {qcreport.__version__}")
     commands = parser.add_subparsers(dest="word", required=True, metavar="COMMAND")
     _compare(commands)
+    parser_signing.add_sign(commands, _add)
     _setting_up(commands)
     _auditors(commands)
     _service(commands)

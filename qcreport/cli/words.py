@@ -30,7 +30,7 @@ def outcome_lines(outcome: Outcome) -> list[str]:
         if outcome.since:
             lines.insert(1, f"  that report is {outcome.since}")
         return lines
-    lines = _answer_lines(json.loads(outcome.result))
+    lines = answer_lines(json.loads(outcome.result))
     if isinstance(outcome, Reported):
         lines.append(f"  report {outcome.number}, {outcome.pages} pages, sealed; a draft until it is signed")
         lines.append(f"  {outcome.path}")
@@ -39,7 +39,8 @@ def outcome_lines(outcome: Outcome) -> list[str]:
     return lines
 
 
-def _answer_lines(result: dict[str, Any]) -> list[str]:
+def answer_lines(result: dict[str, Any]) -> list[str]:
+    """Return the answers of a result.json, one characteristic a line."""
     lines = [printable(f"{result['export']['name']} by plan {result['plan']['name']}")]
     for characteristic in result["characteristics"]:
         answer = characteristic["answer"]

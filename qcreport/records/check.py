@@ -20,6 +20,7 @@ from qcreport.records.check_values import Reread, reread
 from qcreport.records.checkpoints import FILE_NAME
 from qcreport.records.lookups import Lookups
 from qcreport.records.run import Run, Sealing, run_key
+from qcreport.records.signatures import newest_versions, signed_facts
 from qcreport.records.tables import CONTENT, EXPORT, SETTING_FILE
 
 Facts = Mapping[str, Any]
@@ -91,14 +92,15 @@ def check(records: Lookups, reports_folder: Path, options: CheckOptions = PLAIN)
         problems += _runs_against_ledger(connection, found, sealed)
         problems += _imports_against_ledger(connection)
         referred = _referred(connection, found)
+        newest = newest_versions(connection)
         # 3. The store holds what the archived exports hold.
         n_reread, values = (
             (0, []) if options.reread is None else reread(connection, records.archive, options.reread)
         )
     # 4. Every file that is referred to is in the archive, and every file there matches its digest.
     n_archived, archive_problems = _check_archive(records.archive, referred)
-    # 5. The published reports are those that were sealed, and no others.
-    reports, report_problems = _check_reports(reports_folder, sealed)
+    # 5. The published reports are those that were sealed, as signed last, and no others.
+    reports, report_problems = _check_reports(reports_folder, sealed, newest)
     return RecordsStatus(
         n_entries=chain.n_entries,
         n_archived=n_archived,
@@ -198,6 +200,8 @@ def _referred(connection: Connection, found: Iterable[Run]) -> tuple[str, ...]:
     for run in found:
         own = (*run.inputs.digests(), run.context_sha256, run.result_sha256)
         digests |= dict.fromkeys(digest for digest in own if digest is not None)
+    for _, facts in signed_facts(connection):
+        digests |= dict.fromkeys((str(facts["before_sha256"]), str(facts["report_sha256"])))
     return tuple(digests)
 
 
@@ -212,7 +216,9 @@ def _check_archive(archive: Archive, referred: Iterable[str]) -> tuple[int, list
     return len(present), problems
 
 
-def _check_reports(folder: Path, sealed: Mapping[Any, Facts]) -> tuple[int, list[str]]:
+def _check_reports(
+    folder: Path, sealed: Mapping[Any, Facts], newest: Mapping[str, str]
+) -> tuple[int, list[str]]:
     problems = []
     for number, facts in sorted(sealed.items(), key=lambda item: str(item[0])):
         name = str(facts.get("report_name"))
@@ -222,8 +228,12 @@ def _check_reports(folder: Path, sealed: Mapping[Any, Facts]) -> tuple[int, list
         except OSError as error:
             problems.append(f"The report {number} ({name}) cannot be read: {error.strerror or error}.")
             continue
-        if sha256_hex(data) != facts.get("report_sha256"):
-            problems.append(f"The report {number} ({name}) is not the one that was sealed.")
+        found = sha256_hex(data)
+        if str(number) in newest and found == facts.get("report_sha256"):
+            problems.append(f"The report {number} ({name}) lacks the signatures that the ledger has.")
+        elif found != newest.get(str(number), facts.get("report_sha256")):
+            last = "signed last" if str(number) in newest else "sealed"
+            problems.append(f"The report {number} ({name}) is not the one that was {last}.")
     return len(sealed), problems + _unknown_reports(folder, sealed)
 
 

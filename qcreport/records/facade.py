@@ -31,13 +31,14 @@ from qcreport.records.moments import Clock
 from qcreport.records.reading import Reading, Receipt
 from qcreport.records.run import Answers, Reservation, Run, RunInputs, Slot, run_key
 from qcreport.records.same_data import note_content
+from qcreport.records.signatures import Signatures
 from qcreport.records.store import Survey
 from qcreport.records.tables import EXPORT, REFUSAL, TRIAL
 
 __all__ = ["Reading", "Receipt", "Records"]
 
 
-class Records(Decisions, Imports):
+class Records(Decisions, Imports, Signatures):
     """Archive, ledger, numbers and measurements of one site."""
 
     @classmethod

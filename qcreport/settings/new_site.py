@@ -68,6 +68,7 @@ def _write(root: Path, site_text: str, answers: NewSite) -> None:
     config = root / "config"
     for name in ("plans", "layouts", "rules"):
         (config / name).mkdir(parents=True, exist_ok=True)
+    _write_all(config, shipped_files("config", "people.toml"))
     _write_all(config / "rules", shipped_files("config/rules", "*.toml"))
     if answers.demonstration:
         _write_all(config / "plans", shipped_files("config/plans", "*.toml"))

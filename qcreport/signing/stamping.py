@@ -81,8 +81,10 @@ class TimedSigner(PdfSigner):
         signer: HeldKeySigner,
         at: datetime,
         timestamper: TimeStamper | None = None,
+        stamp_style: BaseStampStyle | None = None,
     ) -> None:
-        super().__init__(metadata, signer=signer, timestamper=timestamper, stamp_style=KeepAppearance())
+        style = KeepAppearance() if stamp_style is None else stamp_style
+        super().__init__(metadata, signer=signer, timestamper=timestamper, stamp_style=style)
         self._at = at
 
     def init_signing_session(self, pdf_out: Any, existing_fields_only: bool = False) -> Any:
@@ -103,11 +105,20 @@ def reserved_room(key: SigningKey) -> int:
     return 2 * (held + _SIGNATURE_ROOM)
 
 
-def add_signature(pdf: bytes, key: SigningKey, metadata: PdfSignatureMetadata, at: datetime) -> bytes:
-    """Return the PDF with one signature appended in a field that exists already."""
+def add_signature(
+    pdf: bytes,
+    key: SigningKey,
+    metadata: PdfSignatureMetadata,
+    at: datetime,
+    stamp_style: BaseStampStyle | None = None,
+) -> bytes:
+    """Return the PDF with one signature appended in a field that exists already.
+
+    Without `stamp_style` the field keeps the look that it has.
+    """
     writer = QuietWriter(BytesIO(pdf))
     out = BytesIO()
-    signer = TimedSigner(metadata, HeldKeySigner(key), at)
+    signer = TimedSigner(metadata, HeldKeySigner(key), at, stamp_style=stamp_style)
     signing = signer.async_sign_pdf(
         writer, existing_fields_only=True, bytes_reserved=reserved_room(key), output=out
     )

@@ -14,6 +14,7 @@ from qcreport.pipeline.key import load_service_key
 from qcreport.pipeline.templates import load_site_templates
 from qcreport.rules import parse_rules
 from qcreport.settings import load_site
+from qcreport.settings.people import load_people
 from qcreport.settings.plans import load_plans_below
 from qcreport.settings.site import Site, require_folders
 from qcreport.workbook.layout import parse_layout
@@ -41,6 +42,7 @@ def run(arguments: argparse.Namespace) -> int:
     check("rules", lambda: _rules(root))
     check("layouts", lambda: _layouts(root))
     check("plans", lambda: _plans(root))
+    check("people", lambda: _people(root))
     if site is not None:
         check("templates", lambda: _templates(site))
         check("key", lambda: _key(site))
@@ -108,6 +110,11 @@ def _plans(root: Path) -> str:
     if not plans:
         return "none yet"
     return ", ".join(p.plan.name + ("" if p.plan.approved is not None else " (not approved)") for p in plans)
+
+
+def _people(root: Path) -> str:
+    persons = load_people(root).persons
+    return ", ".join(f"{p.name} ({', '.join(p.may)})" for p in persons) or "nobody may sign yet"
 
 
 def _templates(site: Site) -> str:

@@ -12,6 +12,7 @@ from qcreport.canonical import in_groups_of_eight
 from qcreport.cli.now import now
 from qcreport.errors import UsageError
 from qcreport.settings.keys import KeyFiles, key_files, write_key
+from qcreport.settings.people import PEOPLE_FILE, person_block
 from qcreport.settings.site import Site, load_site, require_folders
 from qcreport.signing.new_key import new_key
 from qcreport.signing.passphrase import find_passphrase
@@ -40,7 +41,7 @@ def run(arguments: argparse.Namespace) -> int:
     print(f"Certificate:  {files.certificate}")
     print(f"Fingerprint:  {in_groups_of_eight(made.fingerprint_sha256)} (SHA-256)")
     print(f"Valid for:    {arguments.days} days")
-    print(_next(site, files, arguments))
+    print(_next(site, files, arguments, made.fingerprint_sha256))
     return 0
 
 
@@ -65,13 +66,14 @@ def _ask_twice() -> str:
     return first
 
 
-def _next(site: Site, files: KeyFiles, arguments: argparse.Namespace) -> str:
+def _next(site: Site, files: KeyFiles, arguments: argparse.Namespace, fingerprint_sha256: str) -> str:
     if arguments.purpose == "service":
         return (
             "Publish the certificate and the fingerprint, so that auditors can get them from you.\n"
             f"Next: qcreport config check --site {arguments.site}"
         )
     return (
-        f"Give {files.key.name} to this person and to nobody else.\n"
-        f"Next: hand the fingerprint to whoever keeps the settings of {site.root}"
+        f"Give {files.key.name} to this person and to nobody else. For {site.root / PEOPLE_FILE}:\n\n"
+        f"{person_block(arguments.name, fingerprint_sha256)}\n\n"
+        f"Next: add these lines, then qcreport config check --site {arguments.site}"
     )

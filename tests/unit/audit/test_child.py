@@ -12,7 +12,8 @@ from typing import Any
 import pytest
 from signing.conftest import LATER
 
-from qcreport.audit import child, limits, verify
+from qcreport.audit import child, verify
+from qcreport.signing import limits
 from qcreport.signing.keys import SigningKey
 
 
@@ -42,7 +43,7 @@ def test_a_verdict_comes_under_the_limits_asked_for(
     monkeypatch: pytest.MonkeyPatch,
 ) -> None:
     told = answer(report, [service_key.certificate_pem().decode()], monkeypatch)
-    assert told["verdict"]["sealed"]["trusted"] is True
+    assert told["answer"]["sealed"]["trusted"] is True
     soft = {kind: pair[0] for kind, pair in limited}
     assert soft == {resource.RLIMIT_AS: 1 << 30, resource.RLIMIT_CPU: 7}
 

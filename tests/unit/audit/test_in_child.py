@@ -13,7 +13,7 @@ from signing.conftest import LATER
 
 from qcreport.audit import in_child
 from qcreport.audit.in_child import verify_in_child
-from qcreport.audit.limits import VerifyLimits
+from qcreport.signing.limits import VerifyLimits
 from qcreport.audit.verify import verify_report
 from qcreport.errors import EnvironmentFailedError, NotOurReportError
 from qcreport.signing.keys import SigningKey
@@ -55,7 +55,7 @@ def busy_with(script: str) -> tuple[str, ...]:
 
 
 def test_too_much_work_is_a_verdict(report: bytes, monkeypatch: pytest.MonkeyPatch) -> None:
-    script = "from qcreport.audit.limits import apply_limits as limit\nlimit(1 << 32, 1)\nwhile True: pass"
+    script = "from qcreport.signing.limits import apply_limits as limit\nlimit(1 << 32, 1)\nwhile True: pass"
     monkeypatch.setattr(in_child, "_COMMAND", busy_with(script))
     verdict = verify_in_child(report, roots=None, now=LATER, limits=VerifyLimits(cpu_s=1))
     jsonschema.validate(verdict, schema())
@@ -74,7 +74,7 @@ def test_a_crash_is_a_verdict(report: bytes, monkeypatch: pytest.MonkeyPatch) ->
         "raise SystemExit(3)",
         "print('no json')",
         "print('[]')",
-        'print(\'{"error": {"kind": "key", "text": "x"}}\')',
+        'print(\'{"error": {"kind": "environment", "text": "x"}}\')',
     ],
 )
 def test_a_child_that_fails_on_its_own_account_is_no_verdict(

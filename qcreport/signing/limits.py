@@ -1,4 +1,4 @@
-"""How much checking one report may cost, and how a process holds itself to it."""
+"""How much checking one PDF may cost, and how a process holds itself to it."""
 
 from __future__ import annotations
 
@@ -9,7 +9,7 @@ MEGABYTE = 1 << 20
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class VerifyLimits:
-    """Bounds of checking one report."""
+    """Bounds of checking one PDF."""
 
     memory_bytes: int = 1536 * MEGABYTE
     """Address space of the checking process, bytes."""

@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 from typing import cast
 
 from qcreport.analysis.comparable import Comparable, all_equal
-from qcreport.analysis.planning import OPEN_ANSWERS, Margin, Planning, df_of
+from qcreport.analysis.planning import MOST_NEEDED, OPEN_ANSWERS, Margin, Planning, df_of
 from qcreport.analysis.procedures import on_means, run_procedure
 from qcreport.analysis.ranks import compare_by_ranks
 from qcreport.analysis.result import PairResult
@@ -49,7 +49,8 @@ def compare(
 ) -> Comparison | None:
     """Return every pair's numbers and answer; None for a procedure of nested designs.
 
-    `sizes` asks for the number of results that would settle each open pair, which takes most of the time.
+    `sizes` asks for what each pair's design can detect and for the number of results that would settle it,
+    which takes most of the time.
 
     Raises
     ------
@@ -84,7 +85,10 @@ def compare(
         groups=by_label,
         scatter=characteristic.scatter,
     )
-    pairs = tuple(_pair(c, planning, scale, sizes=sizes) for c in posthoc.comparisons)
+    planned = sizes and len(posthoc.comparisons) <= MOST_NEEDED
+    pairs = tuple(
+        _pair(c, planning if sizes else None, margin, scale, needed=planned) for c in posthoc.comparisons
+    )
     notices += _known_scatter(characteristic, scale)
     return Comparison(
         posthoc=posthoc,
@@ -168,11 +172,16 @@ def _all_within(
     return within.all_within
 
 
-def _pair(comparison: PairwiseComparison, planning: Planning, scale: Scale, *, sizes: bool) -> PairResult:
-    below, above = planning.margin
-    answer = judge(comparison.lower, comparison.upper, below, above)
-    detectable = planning.detectable(comparison) if sizes else None
-    limits = None if detectable is None else planning.detectable_limits(comparison, detectable)
+def _pair(
+    comparison: PairwiseComparison, planning: Planning | None, margin: Margin, scale: Scale, *, needed: bool
+) -> PairResult:
+    answer = judge(comparison.lower, comparison.upper, margin[0], margin[1])
+    detectable = limits = settled_by = None
+    if planning is not None:
+        detectable = planning.detectable(comparison)
+        limits = None if detectable is None else planning.detectable_limits(comparison, detectable)
+        if needed and answer in OPEN_ANSWERS:
+            settled_by = planning.needed_n(comparison)
     return PairResult(
         first=comparison.first,
         second=comparison.second,
@@ -188,7 +197,7 @@ def _pair(comparison: PairwiseComparison, planning: Planning, scale: Scale, *, s
         detectable_limits=None
         if limits is None
         else (back_from_scale(limits[0], scale), back_from_scale(limits[1], scale)),
-        needed_n=planning.needed_n(comparison) if sizes and answer in OPEN_ANSWERS else None,
+        needed_n=settled_by,
         answer=answer,
     )
 

@@ -100,6 +100,8 @@ def units_left_out(measurements: MeasurementSet, question: Question, label: str)
 
 
 def _left_out(measurements: MeasurementSet, question: Question) -> Sequence[Measurement]:
+    if not question.left_out:
+        return []
     return [
         m
         for m in measurements.measurements

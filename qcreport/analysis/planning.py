@@ -18,6 +18,9 @@ Margin = tuple[float | None, float | None]
 
 OPEN_ANSWERS: Final = frozenset({"different", "not_settled"})
 """Answers that more results could sharpen."""
+MOST_NEEDED: Final = 300
+"""Pairs up to which the number of results that would settle each is searched. Each asks for critical values
+of its own, so that it takes minutes for 200 groups, whose 19,900 numbers nobody reads."""
 
 
 def df_of(comparison: PairwiseComparison, groups: Mapping[str, GroupSummary]) -> float:

@@ -111,7 +111,8 @@ def compare_by_ranks(
         )
     else:
         posthoc = steel_dwass(ranks.labels, ranks.values, alpha=alpha)
-    pairs = tuple(_pair(c, margin, alpha, censored=ready.censored) for c in posthoc.comparisons)
+    censored = ready.censored
+    pairs = tuple(_pair(c, margin, alpha, censored=censored) for c in posthoc.comparisons)
     return RankComparison(
         posthoc=posthoc, pairs=pairs, notices=(*ranks.notices, *_law_notices(posthoc, ready))
     )

@@ -217,10 +217,11 @@ class PairResult:
     """Upper end of the simultaneous interval."""
     detectable: float | None
     """Difference that would be shown with probability 0.80 by this design, in the unit."""
-    needed_n: int | None
-    """Results a group that would settle an open pair, if the scatter is as seen; None where settled."""
     detectable_limits: tuple[float | None, float | None] | None = None
     """The same at the 90 % limits of the scatter seen here; None where the plan gives the scatter."""
+    needed_n: int | None
+    """Results a group that would settle an open pair, if the scatter is as seen; None where settled, or not
+    searched since there are very many pairs."""
     answer: str
     """Code of the answer."""
 
@@ -238,13 +239,13 @@ class PairResult:
             "lower": finite_or_none(self.lower),
             "upper": finite_or_none(self.upper),
             "detectable": finite_or_none(self.detectable),
-            "needed_n": self.needed_n,
-            "answer": self.answer,
             "detectable_limits": (
                 None
                 if self.detectable_limits is None
                 else [finite_or_none(end) for end in self.detectable_limits]
             ),
+            "needed_n": self.needed_n,
+            "answer": self.answer,
         }
 
 
@@ -332,10 +333,10 @@ class CharacteristicResult:
     """Specification limit, for orientation."""
     upper_limit: float | None
     """Specification limit, for orientation."""
-    independent_unit: str
-    """reading, sample or batch."""
     known_scatter: float | None = None
     """Standard deviation of a result by the plan, which `detectable` rests on; None: as seen here."""
+    independent_unit: str
+    """reading, sample or batch."""
     reference: str | None
     """Label of the reference group, or None for every pair."""
     groups: tuple[GroupResult, ...]
@@ -374,10 +375,10 @@ class CharacteristicResult:
     """Hedges' g of the pairs, pair order; empty where not given."""
     overall_effect: EffectSize | None = None
     """Omega squared; None where not given."""
-    flagged: tuple[Flagged, ...]
-    """Outlying values."""
     contrasts: tuple[ContrastResult, ...] = ()
     """The plan's contrasts that could be estimated, plan order."""
+    flagged: tuple[Flagged, ...]
+    """Outlying values."""
     answer: str
     """Code of the most serious pair."""
     error_rate: ErrorRate | None = None
@@ -401,9 +402,9 @@ class CharacteristicResult:
             "direction": self.direction,
             "lower_limit": finite_or_none(self.lower_limit),
             "upper_limit": finite_or_none(self.upper_limit),
+            "known_scatter": finite_or_none(self.known_scatter),
             "independent_unit": self.independent_unit,
             "reference": self.reference,
-            "known_scatter": finite_or_none(self.known_scatter),
             "groups": [g.to_json() for g in self.groups],
             "not_compared": [g.to_json() for g in self.not_compared],
             "checks": [c.to_json() for c in self.checks],
@@ -425,9 +426,9 @@ class CharacteristicResult:
             "overall_effect": None if self.overall_effect is None else self.overall_effect.to_json(),
             "components": None,
             "sensitivity": None if self.sensitivity is None else self.sensitivity.to_json(),
+            "contrasts": [c.to_json() for c in self.contrasts],
             "flagged": [f.to_json() for f in self.flagged],
             "answer": self.answer,
-            "contrasts": [c.to_json() for c in self.contrasts],
             "error_rate": None if self.error_rate is None else self.error_rate.to_json(),
             "left_out": None if self.left_out is None else self.left_out.to_json(),
         }

@@ -19,7 +19,10 @@ MOST_ARRANGEMENTS = 1_000_000
 _ROWS_AT_ONCE = 1 << 15
 _TOLERANCE = 1e-9
 
-Labels = NDArray[np.int8]
+Labels = NDArray[np.int16]
+"""Numbers of groups."""
+Counts = NDArray[np.int32]
+"""Numbers of results; twice a count must fit, too."""
 Array = NDArray[np.float64]
 Comparisons = tuple[tuple[int, int], ...]
 
@@ -125,16 +128,14 @@ def pair_statistics(labels: Labels, blocks: tuple[int, ...], pairs: Comparisons)
     return np.stack(columns, axis=-1)
 
 
-def _running_count(mine: NDArray[np.bool_]) -> NDArray[np.int16]:
+def _running_count(mine: NDArray[np.bool_]) -> Counts:
     """Return how many of a group lie before each place, one column more than places."""
-    result = np.zeros((mine.shape[0], mine.shape[1] + 1), np.int16)
+    result = np.zeros((mine.shape[0], mine.shape[1] + 1), np.int32)
     np.cumsum(mine, axis=-1, out=result[:, 1:])
     return result
 
 
-def _lost_to_ties(
-    together: NDArray[np.int16], starts: NDArray[np.intp], ends: NDArray[np.intp]
-) -> Array | float:
+def _lost_to_ties(together: Counts, starts: NDArray[np.intp], ends: NDArray[np.intp]) -> Array | float:
     """Return sum(t**3 - t) / (N (N - 1)) over the tie blocks of a pair of N results."""
     tied = np.flatnonzero(ends - starts > 1)
     if tied.size == 0:
@@ -166,7 +167,7 @@ def _arrangements(sizes: tuple[int, ...]) -> Iterator[Labels]:
     rows = max(1, _ROWS_AT_ONCE * len(first) // count(sizes))
     for start in range(0, len(first), rows):
         free = rest[start : start + rows]
-        labels = np.zeros((len(free), n), np.int8)
+        labels = np.zeros((len(free), n), np.int16)
         for group, size in enumerate(sizes[1:], start=1):
             labels, free = _deal(labels, free, group, size)
         yield labels
@@ -177,7 +178,7 @@ def _deal(labels: Labels, free: NDArray[np.intp], group: int, size: int) -> tupl
     taken, kept = _choices(free.shape[1], size)
     places = free[:, taken].reshape(-1, size)
     dealt = np.repeat(labels, len(taken), axis=0)
-    np.put_along_axis(dealt, places, np.int8(group), axis=-1)
+    np.put_along_axis(dealt, places, np.int16(group), axis=-1)
     return dealt, free[:, kept].reshape(len(places), kept.shape[1])
 
 

@@ -224,7 +224,7 @@ def _design(labels: Sequence[str], values: Sequence[Sequence[float]]) -> _Design
         values=groups,
         sizes=tuple(len(group) for group in groups),
         blocks=blocks,
-        dealt=np.array([[g for _, g in ordered]], dtype=np.int8),
+        dealt=np.array([[g for _, g in ordered]], dtype=np.int16),
     )
 
 

@@ -6,7 +6,10 @@ import math
 from collections.abc import Sequence
 from itertools import chain
 
+import numpy as np
+
 from qcreport.stats.arrangements import tie_blocks
+from qcreport.stats.distributions.rows import Array
 
 
 def shift_and_interval(
@@ -31,8 +34,8 @@ def shift_and_interval(
     ----------
     .. [1] Hodges & Lehmann (1963), Ann. Math. Stat. 34, 598-611. doi:10.1214/aoms/1177704172
     """
-    differences = sorted(_difference(a, b) for a in first for b in second)
-    total = len(differences)
+    differences = _differences(first, second)
+    total = differences.size
     shift = _middle(differences)
     if critical is None or not all(map(math.isfinite, chain(first, second))):
         return shift, None, None
@@ -42,16 +45,18 @@ def shift_and_interval(
     )  # smallest number of differences below an accepted shift
     if rank < 1:
         return shift, None, None
-    return shift, differences[rank - 1], differences[total - rank]
+    return shift, float(differences[rank - 1]), float(differences[total - rank])
 
 
-def _difference(a: float, b: float) -> float:
-    """Return a - b; two results that are tied at the same infinity differ by 0."""
-    return 0.0 if a == b else a - b
+def _differences(first: Sequence[float], second: Sequence[float]) -> Array:
+    """Return all differences, ascending; two results that are tied at the same infinity differ by 0."""
+    a, b = np.asarray(first)[:, None], np.asarray(second)
+    with np.errstate(invalid="ignore"):
+        return np.sort(np.where(a == b, 0.0, a - b), axis=None)
 
 
-def _middle(ordered: Sequence[float]) -> float:
-    low, high = ordered[(len(ordered) - 1) // 2], ordered[len(ordered) // 2]
+def _middle(ordered: Array) -> float:
+    low, high = float(ordered[(ordered.size - 1) // 2]), float(ordered[ordered.size // 2])
     return low if low == high else 0.5 * low + 0.5 * high
 
 

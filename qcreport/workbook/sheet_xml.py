@@ -24,6 +24,7 @@ _KINDS = {
 }  # fmt: skip
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
 _MAX_MERGES = 100_000
+_MAX_KEPT_NUMBERS = 10_000
 
 Strings = Sequence[tuple[str, bool]]
 
@@ -36,9 +37,9 @@ class SheetScan:
 
     __slots__ = (
         "_cells", "_column", "_columns", "_count", "_empty", "_filter", "_formula", "_has_value", "_in_cell",
-        "_in_data", "_inline", "_n_styles", "_pieces", "_reading", "_row", "_row_text", "_shared_cells",
-        "_strings", "_style", "_styles", "_type", "filters", "hidden_columns", "hidden_rows", "merges",
-        "rows",
+        "_in_data", "_inline", "_n_styles", "_numbers", "_pieces", "_reading", "_row", "_row_text",
+        "_shared_cells", "_strings", "_style", "_styles", "_type", "filters", "hidden_columns", "hidden_rows",
+        "merges", "rows",
     )  # fmt: skip
 
     def __init__(self, strings: Strings, n_styles: int, count: Callable[[int, int], None]) -> None:
@@ -51,6 +52,7 @@ class SheetScan:
         self._columns: dict[str, int] = {}
         self._styles: dict[str, int] = {"0": 0}
         self._shared_cells: dict[tuple[str, int], Cell | None] = {}
+        self._numbers: dict[tuple[str, int], Cell | None] = {}
         self._in_data = self._in_cell = False
         self._row = self._column = 0
         self._row_text = ""
@@ -209,10 +211,10 @@ class SheetScan:
             return Cell(kind, text, self._style, self._formula, True, struck) if text else None
         text = "".join(self._pieces)
         if self._type == "n":
-            text = text.strip()
-            if text or self._formula:
-                return Cell(Kind.NUMBER, checked_text(text), self._style, self._formula, bool(text))
-            return None
+            if self._formula:
+                text = text.strip()
+                return Cell(Kind.NUMBER, checked_text(text), self._style, True, bool(text))
+            return self._number(text)
         if self._type == "s":
             return self._shared(text) if self._has_value else None
         kind = self._kind()
@@ -220,6 +222,17 @@ class SheetScan:
             return None
         cached = self._has_value and (bool(text) or kind is Kind.TEXT)
         return Cell(kind, checked_text(text), self._style, self._formula, cached)
+
+    def _number(self, text: str) -> Cell | None:
+        """Return the cell of a number; the same number in the same style is one object."""
+        key = (text, self._style)
+        if key in self._numbers:
+            return self._numbers[key]
+        stored = text.strip()
+        cell = Cell(Kind.NUMBER, checked_text(stored), self._style, False, True) if stored else None
+        if len(self._numbers) < _MAX_KEPT_NUMBERS:
+            self._numbers[key] = cell
+        return cell
 
     def _kind(self) -> Kind:
         kind = _KINDS.get(self._type)

@@ -70,7 +70,8 @@ def sheet(rows: int) -> Iterator[str]:
         yield (
             f'<row r="{r}"><c r="A{r}" t="s"><v>{7 + i % 200}</v></c>'
             f'<c r="B{r}" t="s"><v>{207 + i % 3}</v></c><c r="C{r}" t="s"><v>{210 + i // 4}</v></c>'
-            f'<c r="D{r}"><v>{1 + i % 4}</v></c><c r="E{r}" t="s"><v>6</v></c><c r="F{r}"><v>{draw.gauss(24, 1):.2f}</v></c></row>'
+            f'<c r="D{r}"><v>{1 + i % 4}</v></c><c r="E{r}" t="s"><v>6</v></c>'
+            f'<c r="F{r}"><v>{draw.gauss(24, 1):.2f}</v></c></row>'
         )
     yield "</sheetData></worksheet>"
 
@@ -93,7 +94,7 @@ def workbook(rows: int) -> bytes:
         '<Default Extension="rels" ContentType="application/vnd.openxmlformats-package.relationships+xml"/>'
         f'<Override PartName="/xl/workbook.xml" ContentType="{TYPE}.sheet.main+xml"/>'
         f'<Override PartName="/xl/sheet.xml" ContentType="{TYPE}.worksheet+xml"/>'
-        f'<Override PartName="/xl/strings.xml" ContentType="{TYPE}.sharedStrings+xml"/></Types>',
+        f'<Override PartName="/xl/sharedStrings.xml" ContentType="{TYPE}.sharedStrings+xml"/></Types>',
         "_rels/.rels": f'<Relationships xmlns="{PACKAGE}/relationships">'
         + relation.format(1, "officeDocument", "xl/workbook.xml")
         + "</Relationships>",
@@ -101,14 +102,14 @@ def workbook(rows: int) -> bytes:
         '<sheet name="Data" sheetId="1" r:id="r1"/></sheets></workbook>',
         "xl/_rels/workbook.xml.rels": f'<Relationships xmlns="{PACKAGE}/relationships">'
         + relation.format(1, "worksheet", "sheet.xml")
-        + relation.format(2, "sharedStrings", "strings.xml")
+        + relation.format(2, "sharedStrings", "sharedStrings.xml")
         + "</Relationships>",
     }
     out = io.BytesIO()
     with zipfile.ZipFile(out, "w", zipfile.ZIP_DEFLATED, compresslevel=1) as archive:
         for name, text in small.items():
             archive.writestr(name, text)
-        for name, pieces in (("xl/sheet.xml", sheet(rows)), ("xl/strings.xml", strings(rows))):
+        for name, pieces in (("xl/sheet.xml", sheet(rows)), ("xl/sharedStrings.xml", strings(rows))):
             with archive.open(name, "w", force_zip64=True) as part:
                 for piece in pieces:
                     part.write(piece.encode())

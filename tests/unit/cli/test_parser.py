@@ -17,23 +17,31 @@ SMALLEST = {
     "keys new": ["N", "--for", "person"],
     "verify": ["r.pdf"],
     "extract": ["r.pdf", "d"],
+    "config check": [],
+    "records list": [],
+    "records check": [],
+    "watch": [],
+    "demo": [],
 }
 
 
 @pytest.mark.parametrize("command", COMMANDS)
-def test_a_command_leads_to_its_module(command: str) -> None:
-    arguments = build_parser().parse_args([*command.split(), *SMALLEST.get(command, [])])
-    assert arguments.command == command
+def test_a_command_has_a_module(command: str) -> None:
     module = importlib.import_module(f"qcreport.cli.commands.{COMMANDS[command]}")
     assert callable(module.run)
-    assert module.__doc__.startswith(f"`qcreport {command}")
+    assert f"`qcreport {command}" in module.__doc__
+
+
+@pytest.mark.parametrize("command", SMALLEST)
+def test_words_lead_to_their_command(command: str) -> None:
+    assert build_parser().parse_args([*command.split(), *SMALLEST[command]]).command == command
 
 
 @pytest.mark.parametrize("command", COMMANDS)
 def test_the_help_groups_every_command(command: str) -> None:
     first, *rest = command.split()
-    (line,) = [text for text in HELP.splitlines() if text.startswith(f"  {first} ")]
-    assert all(word in line for word in rest)
+    lines = [text for text in HELP.splitlines() if text.startswith(f"  {first} ")]
+    assert any(all(word in line for word in rest) for line in lines)
 
 
 def test_the_site_comes_from_option_environment_or_folder(monkeypatch: pytest.MonkeyPatch) -> None:

@@ -74,6 +74,7 @@ def analyse(
         results.append(result)
         notices.extend(added)
     notices.extend(_late_approval(plan, earliest))
+    notices.extend(_late_rules(rules, earliest))
     notices.extend(_unused_directions(plan))
     if records is not None:
         notices.extend(provenance_notices(records, context, results, earliest))
@@ -139,6 +140,16 @@ def _late_approval(plan: ComparisonPlan, earliest: dt.date | None) -> list[Notic
         f"the first measurement is of {earliest.isoformat()}."
     )
     return [Notice(code="plan_set_after_data", cells=(), text=text)]
+
+
+def _late_rules(rules: RulesTable, earliest: dt.date | None) -> list[Notice]:
+    if rules.approved is None or earliest is None or rules.approved.on <= earliest:
+        return []
+    text = (
+        f"Set after the data: the decision table {rules.name} was approved on "
+        f"{rules.approved.on.isoformat()}, the first measurement is of {earliest.isoformat()}."
+    )
+    return [Notice(code="rules_set_after_data", cells=(), text=text)]
 
 
 def _unused_directions(plan: ComparisonPlan) -> list[Notice]:

@@ -80,19 +80,19 @@ def decide(groups: Sequence[Group], question: Question) -> Outcome:
     """Return what is compared, by which row, with which answers."""
     ready = comparable(groups, question.plan)
     gathered = gather(ready, question.plan, question.rules, question.earliest, question.history)
-    choice = _choice(gathered.facts, question)
+    choice = chosen_by(question.rules, gathered.facts, question.plan)
     comparison, why = _run(choice.procedure, ready, question)
     return Outcome(ready=ready, gathered=gathered, choice=choice, comparison=comparison, why_none=why)
 
 
-def _choice(facts: Facts, question: Question) -> Choice:
+def chosen_by(rules: RulesTable, facts: Facts, plan: ComparisonPlan) -> Choice:
     """Return the table's choice, or the procedure the plan fixes where anything can be compared at all."""
-    by_table = choose(question.rules, facts)
-    fixed = question.plan.procedure
+    by_table = choose(rules, facts)
+    fixed = plan.procedure
     nothing = facts.groups < 2 or facts.variation == "none"
     if fixed == BY_RULES or (nothing and by_table.procedure == "none"):
         return by_table
-    return fixed_by_plan(question.rules, facts, fixed)
+    return fixed_by_plan(rules, facts, fixed)
 
 
 def _run(procedure: str, ready: Comparable, question: Question) -> tuple[Comparison | None, str]:

@@ -19,6 +19,7 @@ COMMANDS: Final[dict[str, str]] = {
     "plan size": "plan_size",
     "layout try": "layout_try",
     "rules show": "rules_show",
+    "rules explain": "rules_explain",
     "keys new": "keys_new",
     "verify": "verify",
     "extract": "extract",
@@ -43,6 +44,7 @@ Setting up
   plan propose | size       draft a layout and a plan from an export; how many results a difference needs
   layout try EXPORT         show what would be read from an export, cell by cell
   rules show [TABLE]        print a decision table
+  rules explain EXPORT      which row applies, and which fact would lead to another
 
 Auditors
   verify REPORT.pdf         seal, attachments and numbers, from the file alone
@@ -156,6 +158,9 @@ def _setting_up(commands: Commands) -> None:
     p.add_argument("export", metavar="EXPORT")
     p.add_argument("--layout", metavar="NAME|FILE", help="else the layout of the plan that fits the name")
     rules = _group(commands, "rules", "Show decision tables.")
+    p = _add(rules, "rules explain", "Say which row applies and why.", site=True, json=True)
+    p.add_argument("export", metavar="EXPORT")
+    p.add_argument("--plan", metavar="NAME|FILE", help="use this plan, whatever the file's name")
     p = _add(rules, "rules show", "Print a decision table.", site=True, json=False)
     p.add_argument("table", nargs="?", default="default", metavar="TABLE", help="default, textbook, your own")
     _plan_size(plan)

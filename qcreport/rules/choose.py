@@ -28,7 +28,9 @@ def choose(table: RulesTable, facts: Facts) -> Choice:
         failed = row.fails_on(facts)
         if failed is None:
             steps.append(TraceStep(id=row.id, applied=True, why=_applies(row.when)))
-            rule = RuleApplied(table=table.name, id=row.id, reason=row.reason, source=row.source)
+            rule = RuleApplied(
+                table=table.name, id=row.id, reason=row.reason, source=row.source, approved=table.approved
+            )
             return Choice(procedure=row.procedure, rule=rule, trace=tuple(steps))
         why = f"needs {failed}; here it is {facts.value(failed.fact)}"
         steps.append(TraceStep(id=row.id, applied=False, why=why))

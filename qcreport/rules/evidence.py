@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from qcreport.canonical import finite_or_none
+from qcreport.plan.model import Approval
 
 Json = dict[str, Any]
 
@@ -88,7 +89,16 @@ class RuleApplied:
     """The row's reason, one sentence."""
     source: str
     """Publication or measurement the row rests on."""
+    approved: Approval | None = None
+    """Who approved the table, as its file says; None where it says nothing."""
 
     def to_json(self) -> Json:
         """Return the form of `result.json`."""
-        return {"table": self.table, "id": self.id, "reason": self.reason, "source": self.source}
+        approved = self.approved
+        return {
+            "table": self.table,
+            "id": self.id,
+            "reason": self.reason,
+            "source": self.source,
+            "approved": None if approved is None else {"by": approved.by, "on": approved.on.isoformat()},
+        }

@@ -8,7 +8,7 @@ from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 from typing import Final
 
-from qcreport.plan.model import PROCEDURES, WITH_REFERENCE
+from qcreport.plan.model import PROCEDURES, WITH_REFERENCE, Approval
 from qcreport.rules.conditions import Condition, NumberCondition, WordCondition, parse_number_condition
 from qcreport.rules.facts import NUMBERS, WITH_THE_REFERENCE, WORDS, Facts
 from qcreport.rules.policy import SpreadPolicy, parse_policy
@@ -49,6 +49,8 @@ class RulesTable:
     """How spread is judged."""
     rows: tuple[Row, ...]
     """In order."""
+    approved: Approval | None = None
+    """Who approved it, as the file says; None where it says nothing."""
 
 
 def parse_rules(data: bytes, file: str) -> RulesTable:
@@ -63,10 +65,11 @@ def parse_rules(data: bytes, file: str) -> RulesTable:
     source = TomlSource.from_bytes(data, file)
     top = source.top
     name, title = top.text("name"), top.text("title")
+    approved = _approval(top)
     spread = parse_policy(top.table("spread", required=True))
     readers = top.tables("row", required=True)
     rows = tuple(_row(reader) for reader in readers)
-    table = RulesTable(name=name, title=title, spread=spread, rows=rows)
+    table = RulesTable(name=name, title=title, spread=spread, rows=rows, approved=approved)
     for index, (row, reader) in enumerate(zip(rows, readers, strict=True)):
         if row.id and any(earlier.id == row.id for earlier in rows[:index]):
             reader.fault("id", f"row id {row.id!r} is used twice")
@@ -74,6 +77,14 @@ def parse_rules(data: bytes, file: str) -> RulesTable:
         _prove(table, top, readers)
     source.finish()
     return table
+
+
+def _approval(top: TableReader) -> Approval | None:
+    if "approved" not in top:
+        top.raw("approved", None)
+        return None
+    table = top.table("approved")
+    return Approval(by=table.text("by"), on=table.date("on"))
 
 
 def _row(table: TableReader) -> Row:
@@ -115,10 +126,15 @@ def combinations(table: RulesTable) -> Iterator[Facts]:
     """
     domains: dict[str, tuple[str | int, ...]] = dict(WORDS)
     for fact in NUMBERS:
-        domains[fact] = _bins(_bounds(table, fact))
+        domains[fact] = tried_numbers(table, fact)
     names = list(domains)
     for values in itertools.product(*domains.values()):
         yield Facts(**dict(zip(names, values, strict=True)))  # type: ignore[arg-type]
+
+
+def tried_numbers(table: RulesTable, fact: str) -> tuple[int, ...]:
+    """Return numbers that stand for every bin of a fact, cut at the table's own thresholds."""
+    return _bins(_bounds(table, fact))
 
 
 def _bounds(table: RulesTable, fact: str) -> Iterator[int]:
@@ -154,9 +170,23 @@ def _prove(table: RulesTable, top: TableReader, readers: tuple[TableReader, ...]
         top.fault("row", f"no row answers this combination: {words}")
     for index, reader in enumerate(readers):
         if index not in used:
-            reader.fault("when", "this row can never apply: earlier rows answer all its combinations")
+            reader.fault("when", _dead(table.rows, index))
         elif index in misfits:
-            reader.fault("procedure", misfits[index])
+            reader.fault("procedure", f"row {table.rows[index].id!r}: {misfits[index]}")
+
+
+def _dead(rows: tuple[Row, ...], index: int) -> str:
+    """Return why a row can never apply: a twin above it, or earlier rows together."""
+    row = rows[index]
+    twin = next((r for r in rows[:index] if set(r.when) == set(row.when)), None)
+    if twin is None:
+        return f"row {row.id!r} can never apply: earlier rows answer all its combinations"
+    if twin.procedure == row.procedure:
+        return f"row {row.id!r} can never apply: row {twin.id!r} has the same conditions"
+    return (
+        f"row {row.id!r} contradicts row {twin.id!r}: the same conditions lead to {row.procedure} here and "
+        f"to {twin.procedure} there"
+    )
 
 
 def _misfit(procedure: str, facts: Facts) -> str:

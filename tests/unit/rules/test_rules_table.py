@@ -192,20 +192,36 @@ class TestProof:
     @pytest.mark.parametrize(
         "dead",
         [
-            ("dead", 'groups = "<2"', "none"),
             ("dead", 'groups = "=1"', "none"),
             ("dead", 'variation = "none", spread = "similar"', "none"),
             ("dead", 'groups = "<1", smallest_n = ">=0"', "none"),
             ("dead", 'comparison = "each with the reference", spread = "similar"', "dunnett"),
+            ("dead", 'spread = "similar", comparison = "each with the reference"', "dunnett"),
         ],
     )
     def test_a_dead_row_is_told_by_line(self, dead: tuple[str, str, str]) -> None:
         data = table_of(*SOUND[:3], dead, SOUND[3])
         (fault,) = faults(data)
-        assert fault.text == "this row can never apply: earlier rows answer all its combinations"
+        assert fault.text == "row 'dead' can never apply: earlier rows answer all its combinations"
         assert fault.key == "row[4].when"
         assert data.decode().splitlines()[(fault.line or 0) - 1].startswith("when = {")
         assert fault.line == 4 + 3 * 6 + 3
+
+    @pytest.mark.parametrize(
+        ("procedure", "words"),
+        [
+            ("none", "row 'twin' can never apply: row 'still' has the same conditions"),
+            (
+                "dunnett",
+                "row 'twin' contradicts row 'still': the same conditions lead to dunnett here and to none "
+                "there",
+            ),
+        ],
+    )
+    def test_two_rows_of_the_same_conditions(self, procedure: str, words: str) -> None:
+        (fault,) = faults(table_of(*SOUND[:3], ("twin", 'variation = "none"', procedure), SOUND[3]))
+        assert fault.text == words
+        assert (fault.key, fault.file) == ("row[4].when", "own.toml")
 
     def test_a_row_after_one_that_answers_everything_is_dead(self) -> None:
         (fault,) = faults(table_of(*SOUND, ("more", "", "games_howell")))
@@ -351,6 +367,33 @@ class TestChoice:
         choice = fixed_by_plan(shipped("default"), PLAIN, "tukey_hsd")
         assert choice.procedure == "tukey_hsd"
         assert choice.rule.reason.endswith("would choose games_howell by its row unequal_spread.")
+
+
+class TestApproval:
+    APPROVED = HEAD.replace("[spread]", 'approved = { by = "Head of QC", on = 2026-11-02 }\n[spread]')
+
+    def test_it_is_carried_by_every_choice(self) -> None:
+        table = parse_rules(table_of(*SOUND, head=self.APPROVED), "own.toml")
+        rule = choose(table, PLAIN).rule
+        assert rule.to_json()["approved"] == {"by": "Head of QC", "on": "2026-11-02"}
+
+    def test_without_it_nothing_is_claimed(self) -> None:
+        rule = choose(parse_rules(table_of(*SOUND), "own.toml"), PLAIN).rule
+        assert rule.to_json()["approved"] is None
+
+    @pytest.mark.parametrize(
+        ("approved", "key"),
+        [
+            ('{ by = "Head of QC" }', "approved"),
+            ('{ by = "", on = 2026-11-02 }', "approved.by"),
+            ('{ by = "A", on = "today" }', "approved.on"),
+            ('{ by = "A", on = 2026-11-02, at = 1 }', "approved.at"),
+        ],
+    )
+    def test_half_an_approval_is_refused(self, approved: str, key: str) -> None:
+        head = HEAD.replace("[spread]", f"approved = {approved}\n[spread]")
+        (fault,) = faults(table_of(*SOUND, head=head))
+        assert fault.key == key
 
 
 def test_combinations_hold_every_word_and_both_sides_of_every_threshold() -> None:

@@ -30,6 +30,18 @@ class Laboratory:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Statement:
+    """What a report must say and only the laboratory can, or why it is left out."""
+
+    name: str
+    """Its key in site.toml: customer, items, sampling, …"""
+    text: str
+    """As printed; empty where it is left out."""
+    left_out: str
+    """The recorded reason why it is left out; empty where there is none."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Context:
     """Facts of the moment at which a report was made."""
 
@@ -87,6 +99,8 @@ class Context:
     """qcreport version."""
     provenance: Provenance | None = None
     """What the records add; None where there are none (and in reports of versions before)."""
+    statements: tuple[Statement, ...] = ()
+    """What the laboratory states, in the order of site.toml's documentation."""
     history: tuple[SpreadHistory, ...] = ()
     """Spread of earlier exports, one entry a characteristic that has any."""
 
@@ -108,6 +122,7 @@ class Context:
                 "place_of_work": self.laboratory.place_of_work,
                 "customer": self.laboratory.customer,
             },
+            **({"statements": [_statement_json(s) for s in self.statements]} if self.statements else {}),
             "export": {
                 "name": self.export_name,
                 "sha256": self.export_sha256,
@@ -130,6 +145,10 @@ class Context:
             "demonstration": self.demonstration,
             "software_version": self.software_version,
         }
+
+
+def _statement_json(statement: Statement) -> dict[str, str]:
+    return {"name": statement.name, "text": statement.text, "left_out": statement.left_out}
 
 
 def context_from_json(data: Mapping[str, Any]) -> Context:
@@ -179,6 +198,10 @@ def context_from_json(data: Mapping[str, Any]) -> Context:
             demonstration=bool(data["demonstration"]),
             software_version=str(data["software_version"]),
             provenance=None if records is None else provenance_from_json(records),
+            statements=tuple(
+                Statement(name=str(s["name"]), text=str(s["text"]), left_out=str(s["left_out"]))
+                for s in data.get("statements") or ()
+            ),
             history=tuple(spread_history_from_json(item) for item in history),
         )
     except (KeyError, TypeError, AttributeError, OverflowError) as error:

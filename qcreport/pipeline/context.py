@@ -52,6 +52,7 @@ def build_context(moment: Moment, slot: Slot) -> Context:
         language=site.language,
         page_size=site.page_size,
         laboratory=site.laboratory,
+        statements=site.statements,
         export_name=moment.export_name,
         export_sha256=inputs.export_sha256,
         received_at=slot.received_at,

@@ -15,6 +15,7 @@ from qcreport.report.build_data import data_section, flagged_section
 from qcreport.report.build_first import first_page
 from qcreport.report.build_origin import checking_section, origin_section, terms_section
 from qcreport.report.build_pairs import apart_section, figures_section
+from qcreport.report.build_stated import stated_section
 from qcreport.report.build_why import sensitivity_section, why_section
 from qcreport.report.model import Letterhead, ReportModel, Running
 from qcreport.report.moments import local_time
@@ -92,6 +93,7 @@ def _model(
         sensitivity_section(all_numbers),
         data_section(all_numbers, plan, measurements),
         flagged_section(all_numbers, result, unprintable),
+        stated_section(context, words),
         origin_section(result, context, words),
         checking_section(context, words),
         terms_section(words),

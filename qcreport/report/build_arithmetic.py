@@ -36,7 +36,8 @@ def _characteristic(numbers: Numbers) -> list[Block]:
     if not result.pairs or result.procedure == "none":
         return [*blocks, Paragraph(text=words.nothing_compared())]
     if numbers.ranks:
-        return [*blocks, Paragraph(text=words.ranks())]
+        law = [] if result.law is None else [words.law(result.law)]
+        return [*blocks, Paragraph(text=" ".join([words.ranks(), *law]))]
     view = higher_first(most_serious_first(result)[0], result)
     blocks.append(Paragraph(text=words.redo_intro(view.first, view.second)))
     if numbers.log:

@@ -10,6 +10,7 @@ from qcreport.measurements import CellRef, Censoring, Measurement, MeasurementSe
 from qcreport.plan.model import ComparisonPlan, Groups, Unit
 from qcreport.report.blocks import Block, Cells, Paragraph, Section, Subheading
 from qcreport.report.build_pairs import flag_keys
+from qcreport.report.build_stated import left_out_blocks
 from qcreport.report.numbers import Numbers
 from qcreport.report.rounding import LARGEST_DECIMALS, fixed
 from qcreport.report.words_en import Words
@@ -100,10 +101,11 @@ def flagged_section(all_numbers: Sequence[Numbers], result: Result, unprintable:
     words = all_numbers[0].words
     blocks: list[Block] = []
     for numbers in all_numbers:
-        texts = _flagged(numbers) + _described(numbers)
-        if len(all_numbers) > 1 and texts:
+        found: list[Block] = [Paragraph(text=t) for t in _flagged(numbers) + _described(numbers)]
+        found += left_out_blocks(numbers, result.provenance)
+        if len(all_numbers) > 1 and found:
             blocks.append(Subheading(text=numbers.result.title))
-        blocks += [Paragraph(text=t) for t in texts]
+        blocks += found
     if not any(n.result.flagged for n in all_numbers):
         blocks.append(Paragraph(text=words.nothing_flagged()))
     blocks.append(Subheading(text=words.reading_notices()))

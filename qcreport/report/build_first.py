@@ -11,6 +11,7 @@ from qcreport.measurements import MeasurementSet
 from qcreport.plan.model import ComparisonPlan, Family, Unit
 from qcreport.report.build_answers import PAIRS_ON_FIRST_PAGE, first_page_answer
 from qcreport.report.build_pairs import flag_keys, panels
+from qcreport.report.build_stated import replaces_row, run_changes
 from qcreport.report.build_why import approval_texts, earliest_time, latest_time
 from qcreport.report.model import Answer, FieldBox, FirstPage
 from qcreport.report.moments import local_time
@@ -94,12 +95,17 @@ def _counts(numbers: Numbers, result: Result, *, titled: bool) -> str:
     if found.independent_unit != Unit.READING and readings != values:
         parts[0] = words.averaged(readings, values, found.independent_unit)
     parts.append(_flagged(numbers))
-    left_out = sum(len(n.cells) for n in result.notices if n.code.startswith("left_out"))
-    parts.append(words.left_out(left_out) if left_out else words.none_left_out())
+    if found.left_out is None:
+        parts.append(words.none_left_out())
+    else:
+        parts.append(words.left_out(len(found.left_out.values)))
+        parts.append(words.left_out_effect(bool(found.left_out.changed)))
     text = "; ".join(parts) + "."
     if found.sensitivity is not None and found.sensitivity.changed:
         procedure = words.procedure(found.sensitivity.procedure)
         text += " " + words.depends_on_spread(len(found.sensitivity.changed), procedure)
+    if numbers.ranks and any(n.code == "ranks_unreachable" for n in result.notices):
+        text += " " + words.unreachable()
     return f"{found.title}: {text}" if titled else text
 
 
@@ -128,9 +134,10 @@ def _basis(
         shortest(plan.alpha), plan.independent_unit, export_wide=plan.family is Family.EXPORT
     )
     earliest, latest = earliest_time(read), latest_time(read)
+    run = words.run(context.run_k, context.run_n, context.run_reason)
     texts = (
-        words.export_and_run(
-            context.export_name, words.run(context.run_k, context.run_n, context.run_reason)
+        "; ".join(
+            filter(None, (words.export_and_run(context.export_name, run), run_changes(context, words)))
         ),
         words.product(plan.product.strip(), plan.method.strip()),
         words.dates(
@@ -141,7 +148,7 @@ def _basis(
         words.plan(plan.name, approval),
         " ".join([*list(rules)[:3], rate]),
     )
-    return tuple(zip(words.basis_labels(), texts, strict=True))
+    return (*replaces_row(context, words), *zip(words.basis_labels(), texts, strict=True))
 
 
 def field_boxes(words: Words, fingerprint_sha256: str) -> tuple[FieldBox, ...]:

@@ -2,16 +2,16 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Sequence
 
 from qcreport.analysis.result import CharacteristicResult, GroupResult
 from qcreport.report.blocks import Block, Column, Figure, Paragraph, Section, Subheading, Table
 from qcreport.report.build_answers import first_page_answer
+from qcreport.report.build_beside import contrast_blocks, design_blocks, effect_blocks
 from qcreport.report.figure_apart import apart_panel, shown_pairs
 from qcreport.report.figure_mark import pair_grid
 from qcreport.report.figure_values import values_panel
-from qcreport.report.letters import letter_name, same_letters
+from qcreport.report.letters import letter_name, letters_of
 from qcreport.report.numbers import Numbers
 from qcreport.report.pairs import EXCLUDES_NULL, higher_first, most_serious_first
 from qcreport.report.rounding import shortest, significant
@@ -127,12 +127,7 @@ def _after_pairs(numbers: Numbers) -> list[Block]:
     if result.all_within_margin is not None:
         level = f"{shortest(float(significant((1 - 2 * result.alpha) * 100, 4)))} %"
         blocks.append(Paragraph(text=words.all_within_margin(result.all_within_margin, level)))
-    found = [p.detectable for p in result.pairs if p.detectable is not None and math.isfinite(p.detectable)]
-    if found:
-        low, high = numbers.difference(min(found)), numbers.difference(max(found))
-        blocks.append(
-            Paragraph(text=words.detectable(low, high, "" if numbers.log else result.unit), note=True)
-        )
+    blocks += [*contrast_blocks(numbers), *design_blocks(numbers), *effect_blocks(numbers)]
     if any(g.n <= 4 for g in result.groups):
         blocks.append(Paragraph(text=words.few_results(), note=True))
     return blocks
@@ -140,7 +135,7 @@ def _after_pairs(numbers: Numbers) -> list[Block]:
 
 def _groups_table(numbers: Numbers) -> Table:
     result, words = numbers.result, numbers.words
-    letters = len(result.groups) > LETTERS_ABOVE and result.reference is None and bool(result.pairs)
+    letters = len(result.groups) > LETTERS_ABOVE and bool(result.letters)
     heads = words.group_heads(letters=letters)
     shares = (28, 6, 11, 11, 17, 27)
     columns = tuple(
@@ -148,7 +143,7 @@ def _groups_table(numbers: Numbers) -> Table:
         for i, (h, s) in enumerate(zip(heads, shares, strict=True))
     )
     apart = _shown_different(result)
-    groups_of = same_letters(result.groups, apart) if letters else {}
+    groups_of = letters_of(result) if letters else {}
     rows = [_group_row(g, numbers, apart, groups_of) for g in result.groups]
     return Table(columns=columns, rows=tuple(rows))
 

@@ -9,6 +9,7 @@ from qcreport.analysis.result import CharacteristicResult, Check, TraceStep
 from qcreport.measurements import MeasurementSet
 from qcreport.plan.model import ComparisonPlan
 from qcreport.report.blocks import Block, Column, Paragraph, Section, Subheading, Table
+from qcreport.report.build_beside import rule_blocks
 from qcreport.report.numbers import MISSING, Numbers
 from qcreport.report.rounding import fixed, shortest, significant, trimmed
 from qcreport.report.words_en import Words
@@ -24,6 +25,7 @@ def why_section(all_numbers: Sequence[Numbers], plan: ComparisonPlan, read: Meas
         if len(all_numbers) > 1:
             blocks.append(Subheading(text=numbers.result.title))
         blocks += _characteristic(numbers)
+    blocks += rule_blocks(all_numbers)
     blocks += [Paragraph(text=t) for t in _plan_texts(all_numbers[0], plan, read)]
     blocks.append(Paragraph(text=words.near_normal(), note=True))
     return Section(anchor="why", heading=words.WHY, blocks=tuple(blocks))

@@ -3,29 +3,18 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Sequence
 
-from qcreport.analysis.result import GroupResult
-from qcreport.stats.letters import compact_letters
+from qcreport.analysis.result import CharacteristicResult
 
 _LETTER = re.compile("[a-z][0-9]*")
 
 
-def same_letters(groups: Sequence[GroupResult], apart: frozenset[frozenset[str]]) -> dict[str, str]:
-    """Return each group's letters, rising as means fall; two groups share one where nothing is shown.
-
-    Parameters
-    ----------
-    groups : sequence of GroupResult
-        All groups.
-    apart : frozenset
-        Pairs of labels that are shown to differ.
-    """
-    ordered = sorted(groups, key=lambda g: -(g.mean or 0.0))
-    place = {g.label: i for i, g in enumerate(ordered)}
-    different = [(place[a], place[b]) for a, b in (sorted(pair) for pair in apart)]
-    letters = compact_letters(len(ordered), different)
-    return {g.label: " ".join(_LETTER.findall(text)) for g, text in zip(ordered, letters, strict=True)}
+def letters_of(result: CharacteristicResult) -> dict[str, str]:
+    """Return the letters of every compared group; a group that is only described has none."""
+    described = {g.label for g in result.not_compared}
+    compared = [g.label for g in result.groups if g.label not in described]
+    letters = dict(zip(compared, result.letters, strict=True))
+    return {g.label: " ".join(_LETTER.findall(letters.get(g.label, ""))) for g in result.groups}
 
 
 def letter_name(index: int) -> str:

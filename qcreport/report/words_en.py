@@ -4,12 +4,13 @@ from __future__ import annotations
 
 from qcreport.report.words_en_answers import AnswerWords
 from qcreport.report.words_en_arithmetic import ArithmeticWords
+from qcreport.report.words_en_beside import BesideWords
 from qcreport.report.words_en_checking import CheckingWords
 from qcreport.report.words_en_pages import PageWords
 from qcreport.report.words_en_sections import SectionWords
 
 
-class Words(AnswerWords, SectionWords, ArithmeticWords, CheckingWords, PageWords):
+class Words(AnswerWords, SectionWords, BesideWords, ArithmeticWords, CheckingWords, PageWords):
     """All texts of a report in English."""
 
     ANSWER = "Answer"
@@ -24,5 +25,6 @@ class Words(AnswerWords, SectionWords, ArithmeticWords, CheckingWords, PageWords
     CHECKING = "How to check without our software"
     TERMS = "Terms"
     CAUTIONS = "Cautions"
+    STATED = "Stated by the laboratory"
     BASIS = "What it rests on"
     SIGNING = "Signatures"

@@ -97,15 +97,6 @@ class SectionWords(FigureWords):
             "(downwards) begin."
         )
 
-    def detectable(self, low: str, high: str, unit: str) -> str:
-        """Return what the design could have shown."""
-        span = low if low == high else f"{low} to {high}"
-        return (
-            f"This design shows a difference of {span} {unit}".rstrip()
-            + " with probability 0.80, if the scatter is as seen here; it describes the design, the ranges "
-            "above describe the result."
-        )
-
     def few_results(self) -> str:
         """Return the caution for small groups."""
         return f"With four or fewer results a {self.group} only very large differences can be shown."

@@ -8,9 +8,10 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Final
 
-from qcreport.analysis.context import Laboratory
+from qcreport.analysis.context import Laboratory, Statement
 from qcreport.errors import ConfigError, EnvironmentFailedError, Fault, UsageError
 from qcreport.settings.limits import parse_limits
+from qcreport.settings.statements import parse_statements
 from qcreport.toml_source import TableReader, TomlSource
 from qcreport.workbook.limits import Limits
 
@@ -91,6 +92,8 @@ class Site:
     """A4 or Letter."""
     demonstration: bool
     """True for a demo site."""
+    statements: tuple[Statement, ...]
+    """What reports must say and only the laboratory can; empty where the site does not ask for it."""
     folders: Folders
     """Where things are."""
     intake: IntakeSettings
@@ -154,6 +157,7 @@ def parse_site(data: bytes, file: str, root: Path) -> Site:
         language=language,
         page_size=report.text("page_size", "A4", choices=PAGE_SIZES),
         demonstration=demonstration,
+        statements=parse_statements(report),
         folders=_folders(top.table("folders"), root),
         intake=IntakeSettings(
             quiet_s=intake.number("quiet_s", 5.0, minimum=0.0),

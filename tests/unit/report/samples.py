@@ -45,6 +45,7 @@ from qcreport.plan.model import (
     Unit,
 )
 from qcreport.report.attachment import Attachment
+from qcreport.stats.letters import compact_letters
 
 LAP_SHEAR: dict[str, list[float]] = {
     "LA-2403": [24.84, 22.95, 23.11, 25.36, 23.45, 24.80, 24.98, 23.98],
@@ -270,8 +271,17 @@ def characteristic(
         all_within_margin=None if margin == (None, None) else all(p.answer == "equivalent" for p in pairs),
         pairs=pairs,
         sensitivity=Sensitivity(procedure="dunnett_t3", changed=()),
+        letters=letters_of(groups, pairs) if reference is None else (),
         flagged=flag(groups[-1]) if flagged else (),
         answer=min((p.answer for p in pairs), key=ORDER.index),
+    )
+
+
+def letters_of(groups: Sequence[GroupResult], pairs: Sequence[PairResult]) -> tuple[str, ...]:
+    order = [g.label for g in groups]
+    shown = ("matters", "different", "within_margin")
+    return compact_letters(
+        len(order), [(order.index(p.first), order.index(p.second)) for p in pairs if p.answer in shown]
     )
 
 

@@ -9,7 +9,7 @@ from qcreport.cli.words import outcome_lines
 from qcreport.errors import ExportRefusedError
 from qcreport.pipeline.inbox import Handled
 from qcreport.service.model import Counts, Event, EventKind
-from qcreport.service.serve import Audience
+from qcreport.service.serve import Audience, copy_words
 
 
 class TerminalAudience(Audience):
@@ -24,6 +24,8 @@ class TerminalAudience(Audience):
         """Print the outcomes and refusals of one export."""
         self.handled_exports.append(handled)
         self._clear()
+        if handled.copy is not None:
+            print(printable(copy_words(handled.name, handled.copy)) + "\n", flush=True)
         for outcome in handled.outcomes:
             print("\n".join(outcome_lines(outcome)) + "\n", flush=True)
         for refused in handled.refusals:

@@ -14,6 +14,7 @@ from qcreport.intake.refusals import put_refused
 from qcreport.pipeline.choose_plans import fitting_plans
 from qcreport.pipeline.outcome import Outcome, Received
 from qcreport.pipeline.pipeline import Pipeline
+from qcreport.pipeline.signed_copies import SignedCopies, TakenCopy
 from qcreport.records.facade import Records
 from qcreport.settings.plans import PlanSettings
 from qcreport.settings.site import Site
@@ -41,6 +42,8 @@ class Handled:
     """Reports."""
     refusals: tuple[Refused, ...]
     """Refusals; both may be there where several plans fit."""
+    copy: TakenCopy | None = None
+    """A signed copy of a report, which is no export."""
 
 
 class InboxHandler:
@@ -53,11 +56,13 @@ class InboxHandler:
         records: Records,
         pipeline: Pipeline,
         load_plans: Callable[[Site], tuple[PlanSettings, ...]],
+        clock: Callable[[], dt.datetime],
     ) -> None:
         self._site = site
         self._records = records
         self._pipeline = pipeline
         self._load_plans = load_plans
+        self._copies = SignedCopies(site=site, records=records, clock=clock)
 
     def handle(self, export: ClaimedExport) -> Handled:
         """Answer or refuse one export; safe to repeat after a kill at any instant.
@@ -65,10 +70,14 @@ class InboxHandler:
         Raises
         ------
         ExportRefusedError
-            Where no plan fits its name, or the file was refused unread.
+            Where no plan fits its name, the file was refused unread, or it is a PDF but no copy of a report
+            that can be filed.
         """
         if export.data is None or export.sha256 is None:
             raise export.refusal or _unreadable(export.name)
+        copy = self._copies.take(export.name, export.data)
+        if copy is not None:
+            return Handled(name=export.name, outcomes=(), refusals=(), copy=copy)
         received = Received(
             name=export.name, data=export.data, sha256=export.sha256, claim=export.claim.id, actor=ACTOR
         )

@@ -10,6 +10,7 @@ from qcreport.intake.exports import ClaimedExport
 from qcreport.pipeline.inbox import Handled, InboxHandler, Refused
 from qcreport.pipeline.opened import Opened
 from qcreport.pipeline.outcome import Reported
+from qcreport.pipeline.signed_copies import TakenCopy
 from qcreport.service.bookkeeping import record_event
 from qcreport.service.loop import Service
 from qcreport.service.model import Counts, Event, EventKind, Outcome, OutcomeKind, ServiceSettings
@@ -41,7 +42,7 @@ def serve(work: Opened, clock: Callable[[], datetime], audience: Audience, *, on
         Where another service of this site runs; with `once` also where the machine fails.
     """
     handler = InboxHandler(
-        site=work.site, records=work.records, pipeline=work.pipeline, load_plans=load_plans
+        site=work.site, records=work.records, pipeline=work.pipeline, load_plans=load_plans, clock=clock
     )
 
     def process(export: ClaimedExport) -> Outcome:
@@ -88,6 +89,8 @@ def service_settings(site: Site) -> ServiceSettings:
 
 def summary(handled: Handled) -> Outcome:
     """Return what became of an export as the loop counts it."""
+    if handled.copy is not None:
+        return Outcome(kind=OutcomeKind.RECORDED, text=copy_words(handled.name, handled.copy))
     if handled.refusals and not handled.outcomes:
         return Outcome(kind=OutcomeKind.REFUSED, text=_refused_words(handled.refusals[0]))
     new = [o for o in handled.outcomes if isinstance(o, Reported) and o.new]
@@ -95,6 +98,15 @@ def summary(handled: Handled) -> Outcome:
     if new:
         return Outcome(kind=OutcomeKind.REPORTED, text=f"{handled.name} was reported as {numbers}.")
     return Outcome(kind=OutcomeKind.RECORDED, text=f"{handled.name} was answered before, in {numbers}.")
+
+
+def copy_words(name: str, copy: TakenCopy) -> str:
+    """Return what became of a signed copy, one sentence."""
+    filed = copy.filed
+    if filed is None:
+        return f"{name} is a copy of {copy.number} that was filed before."
+    issued = "; it is issued" if filed.issued else ""
+    return f"{name}: {filed.number} is {filed.role} by {filed.person.name}{issued}."
 
 
 def _refused_words(refused: Refused) -> str:

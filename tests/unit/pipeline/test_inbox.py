@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 from pathlib import Path
 from types import SimpleNamespace
 from typing import Any
@@ -63,7 +64,11 @@ class World:
             time_zone="Europe/Berlin", folders=SimpleNamespace(refused=self.root / "refused")
         )
         me: Any = self
-        return InboxHandler(site=site, records=me, pipeline=me, load_plans=lambda _: plans)
+        return InboxHandler(site=site, records=me, pipeline=me, load_plans=lambda _: plans, clock=clock)
+
+
+def clock() -> dt.datetime:
+    return dt.datetime(2026, 11, 2, 6, 12, tzinfo=dt.UTC)
 
 
 @pytest.fixture

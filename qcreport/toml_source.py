@@ -225,7 +225,7 @@ class TableReader:
         value = self._typed(key, default, (str,), "a text", "")
         if key in self._data and isinstance(self._data[key], str):
             if choices is not None and value not in choices:
-                self.fault(key, f"must be one of {', '.join(map(repr, choices))}, found {value!r}")
+                self.fault(key, f"must be one of {', '.join(repr(str(c)) for c in choices)}, found {value!r}")
             elif not blank and not value.strip():
                 self.fault(key, "must not be blank")
         return value

@@ -267,5 +267,6 @@ def _needs_reason(received: Received, settings: PlanSettings, run: Run) -> Expor
         found=f"This export was compared before, as {run.number}, and plan, layout, rules or templates have "
         "changed since.",
         expected="A reason for comparing the same export again: every run must be explained.",
-        next_step=f'Run: qcreport compare {received.name} --plan {settings.plan.name} --reason "…"',
+        next_step="Run with the file kept beside this note: qcreport compare FILE "
+        f'--plan {settings.plan.name} --reason "…" --site SITE',
     )

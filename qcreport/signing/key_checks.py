@@ -119,6 +119,6 @@ def check_key_file_mode(path: Path) -> None:
     if mode & 0o077:
         raise SigningDeniedError(
             f"{path.name} may be read or changed by others (mode {mode:03o}); only its owner may. "
-            f"Run: chmod 600 {path.name}",
+            f"Run: chmod 600 {path}",
             file=path.name,
         )

@@ -49,8 +49,8 @@ def compare(
 ) -> Comparison | None:
     """Return every pair's numbers and answer; None for a procedure of nested designs.
 
-    `sizes` asks for what each pair's design can detect and for the number of results that would settle it,
-    which takes most of the time.
+    `sizes` asks for what each pair's design can detect, for the number of results that would settle it, and
+    whether every pair is within the margin: most of the time goes there.
 
     Raises
     ------
@@ -94,7 +94,7 @@ def compare(
         posthoc=posthoc,
         summaries=summaries,
         pairs=pairs,
-        all_within_margin=_all_within(posthoc, by_label, margin, alpha),
+        all_within_margin=_all_within(posthoc, by_label, margin, alpha) if sizes else None,
         notices=notices,
     )
 

@@ -100,14 +100,24 @@ def scatter_limits(sd: float, df: float, confidence: float = 0.90) -> tuple[floa
 
 
 def _root(excess: Callable[[float], float], start: float) -> float:
-    """Return the root, or 0, of a falling function: false position that halves the older end (Illinois)."""
-    low, high = 0.0, max(2.0 * start, 1.0)
-    at_low, at_high = excess(low), excess(high)
+    """Return the root near `start`, or 0, of a falling function.
+
+    A bracket grown from the start, then false position that halves the older end (Illinois).
+    """
+    low, high = 0.0, max(start, 0.5)
+    at_low, at_high = math.inf, excess(high)
+    while at_high > 0.0:
+        low, at_low, high = high, at_high, 1.25 * high
+        at_high = excess(high)
+    while at_low == math.inf:
+        below = 0.8 * high if high > 0.1 else 0.0
+        found = excess(below)
+        if found > 0.0 or below == 0.0:
+            low, at_low = below, found
+        else:
+            high, at_high = below, found
     if at_low <= 0.0:
         return low
-    while at_high > 0.0:
-        low, high, at_low = high, 2.0 * high, at_high
-        at_high = excess(high)
     middle, last, side = high, low, 0
     while abs(middle - last) > _CLOSE * middle:
         last, middle = middle, (low * at_high - high * at_low) / (at_high - at_low)

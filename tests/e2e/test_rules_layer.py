@@ -22,9 +22,9 @@ def tonight(folder: Path) -> Path:
 
 @pytest.fixture
 def site_with_past(site: Site, tmp_path: Path) -> Site:
-    """Return a site that reported forty batches before."""
+    """Return a site whose records hold forty batches of before."""
     past = batches([f"P{i:02}-2410" for i in range(40)])
-    site.done("compare", export(tmp_path / PAST, past))
+    site.done("records", "import", export(tmp_path / PAST, past))
     return site
 
 

@@ -9,7 +9,6 @@ from pathlib import Path
 from qcreport.errors import UsageError
 from qcreport.rules import RulesTable, parse_rules
 from qcreport.rules.policy import THIS_EXPORT, SpreadPolicy
-from qcreport.settings import load_site
 from qcreport.settings.shipped import shipped_folder
 
 
@@ -25,10 +24,9 @@ def run(arguments: argparse.Namespace) -> int:
 
 
 def _folder(root: Path) -> Path:
-    try:
-        return load_site(root).root / "config" / "rules"
-    except UsageError:
-        return shipped_folder("config/rules")
+    """Return the site's rules, whatever its other settings are; as shipped where there is none."""
+    own = root / "config" / "rules"
+    return own if own.is_dir() else shipped_folder("config/rules")
 
 
 def table_text(table: RulesTable) -> str:
@@ -69,7 +67,8 @@ def _policy(policy: SpreadPolicy) -> list[str]:
         f"{policy.ratio_limit:g} (lines: with their history in the records);",
         f"or where {policy.history_batches} earlier batches with {policy.history_df} or more degrees of "
         "freedom have an upper limit of the standard deviation of ln sigma of at most "
-        f"{policy.history_sd_ln:g}, for {policy.history_groups} groups at most and unless one group exceeds the others as above.",
+        f"{policy.history_sd_ln:g}, for {policy.history_groups} groups at most and unless one group exceeds "
+        "the others as above.",
         f"Else it is different where median-centred Levene has p < {policy.different_level:g}, or cannot be "
         "judged.",
     )

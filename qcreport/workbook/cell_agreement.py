@@ -58,6 +58,8 @@ class Agreement:
         if not is_stored_number(cell.text):
             return bool(cell.text.strip() == other)
         number = float(cell.text)
+        if isinstance(other, str):  # a stored number with white space around it
+            return is_stored_number(other.strip()) and other != other.strip() and float(other) == number
         if isinstance(other, (int, float)) and not isinstance(other, bool):
             return number == other
         days = self._days(other)

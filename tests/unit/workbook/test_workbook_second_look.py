@@ -257,6 +257,9 @@ def test_it_can_be_left_out() -> None:
         (Cell(Kind.NUMBER, "0.5"), dt.time(12), True),
         (Cell(Kind.NUMBER, "1.5"), dt.timedelta(days=1.5), True),
         (Cell(Kind.NUMBER, "3"), True, False),
+        (Cell(Kind.NUMBER, "24.1"), " 24.1 ", True),
+        (Cell(Kind.NUMBER, "24.1"), " 24.2 ", False),
+        (Cell(Kind.NUMBER, "24.1"), "24.1", False),
         (Cell(Kind.NUMBER, "", 0, True, False), "", True),
         (Cell(Kind.NUMBER, "", 0, True, False), 7.0, False),
         (Cell(Kind.TEXT, "", 0, True, False), "x", False),
@@ -281,3 +284,23 @@ def test_first_look_does_not_wait_for_the_second_readers_library() -> None:
     )
     done = subprocess.run([sys.executable, "-I", "-c", code], capture_output=True, text=True, check=True)
     assert done.stdout.strip() == "[]"
+
+
+@pytest.mark.parametrize(
+    "cells",
+    [
+        "<c t='str'><v>LA</v></c><c t='str'><v>S</v></c><c><v>24.1</v></c>",
+        "<c r='C2'><v> 24.1 </v></c><c r='B2' t='str'><v>S</v></c><c r='A2' t='str'><v>LA</v></c>",
+        "<c r='A2' t='str'><v>LA</v></c><c r='B2' t='b'><v>1</v></c><c r='C2'><v>2.41E+1</v></c>",
+        "<c r='A2' t='str'><v>LA</v></c><c r='B2' t='e'><v>#N/A</v></c>"
+        "<c r='C2'><v>24.100000000000001</v></c>",
+        "<c r='A2' t='str'><v>LA_x000D_&#10;</v></c><c r='B2' t='str'><f>1</f><v/></c>"
+        "<c r='C2'><v>24.1</v></c>",
+        "<c r='A2' t='str'><v>_xD83E__xDDEA_</v></c><c r='B2'><v>12345678901234567</v></c>"
+        "<c r='C2'><v>24.1</v></c>",
+    ],
+)
+def test_rare_and_valid_ways_of_writing_are_no_difference(cells: str) -> None:
+    result = read(zipped(parts(table([]) + f'<row r="2">{cells}</row>')))
+    assert [m.value for m in result.measurements] == [24.1]
+    assert not limited(result)

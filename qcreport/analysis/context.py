@@ -42,6 +42,22 @@ class Statement:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Signer:
+    """Somebody who may sign the report, as the seal vouches for."""
+
+    name: str
+    """As people.toml names them."""
+    certificate_sha256: str
+    """SHA-256 of their certificate, hexadecimal."""
+    may: tuple[str, ...]
+    """What they may sign as: `reviewed`, `authorised`."""
+
+    def to_json(self) -> dict[str, Any]:
+        """Return the entry of `context.json`."""
+        return {"name": self.name, "certificate_sha256": self.certificate_sha256, "may": list(self.may)}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Context:
     """Facts of the moment at which a report was made."""
 
@@ -103,6 +119,8 @@ class Context:
     """What the laboratory states, in the order of site.toml's documentation."""
     history: tuple[SpreadHistory, ...] = ()
     """Spread of earlier exports, one entry a characteristic that has any."""
+    signers: tuple[Signer, ...] = ()
+    """Who may sign the report, so that an auditor with the report alone can tell."""
 
     def to_json(self) -> dict[str, Any]:
         """Return the document `qcreport/context/1`."""
@@ -142,6 +160,7 @@ class Context:
                 "fingerprint_sha256": self.seal_fingerprint_sha256,
                 "pades_level": self.pades_level,
             },
+            **({"signers": [s.to_json() for s in self.signers]} if self.signers else {}),
             "demonstration": self.demonstration,
             "software_version": self.software_version,
         }
@@ -203,6 +222,14 @@ def context_from_json(data: Mapping[str, Any]) -> Context:
                 for s in data.get("statements") or ()
             ),
             history=tuple(spread_history_from_json(item) for item in history),
+            signers=tuple(
+                Signer(
+                    name=str(item["name"]),
+                    certificate_sha256=str(item["certificate_sha256"]),
+                    may=tuple(str(role) for role in item["may"]),
+                )
+                for item in data.get("signers") or ()
+            ),
         )
     except (KeyError, TypeError, AttributeError, OverflowError) as error:
         raise ValueError(f"context.json lacks or spoils {error}") from None

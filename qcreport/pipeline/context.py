@@ -5,11 +5,12 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import qcreport
-from qcreport.analysis.context import Context
+from qcreport.analysis.context import Context, Signer
 from qcreport.analysis.provenance import Provenance
 from qcreport.records.run import RunInputs, Slot
 from qcreport.report.templates import TemplateSet
 from qcreport.rules.history import SpreadHistory
+from qcreport.settings.people import load_people
 from qcreport.settings.plans import PlanSettings
 from qcreport.settings.site import Site
 from qcreport.signing.keys import SigningKey
@@ -73,5 +74,9 @@ def build_context(moment: Moment, slot: Slot) -> Context:
         demonstration=site.demonstration,
         software_version=qcreport.__version__,
         history=moment.history,
+        signers=tuple(
+            Signer(name=p.name, certificate_sha256=p.certificate_sha256, may=p.may)
+            for p in load_people(site.root).persons
+        ),
         provenance=moment.provenance,
     )

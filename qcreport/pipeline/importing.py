@@ -160,7 +160,7 @@ def _refused(
 ) -> Imported:
     """Record a refusal once for each file and layout; a file that is refused stays where it is."""
     digest = None if data is None else sha256_hex(data)
-    claim = f"import-{digest or name}"
+    claim = f"import-{digest or 'unread'}-{name}"
     records.refuse(claim, error, export_sha256=digest, folder="", actor=actor, plan_name="")
     return Imported(name=name, layout=layout, state=ImportState.REFUSED, survey=None, refusal=error)
 

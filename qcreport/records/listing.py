@@ -211,7 +211,7 @@ def open_refusals(connection: Connection) -> tuple[OpenRefusal, ...]:
 def _last_readings(connection: Connection) -> dict[tuple[str, str], int]:
     """Return the last entry that read or recognised a name or digest, by plan and (plan "") by any."""
     last: dict[tuple[str, str], int] = {}
-    for kind in (Kind.READ, Kind.DUPLICATE):
+    for kind in (Kind.READ, Kind.DUPLICATE, Kind.IMPORTED):
         for entry in ledger.entries(connection, kind=kind):
             facts = entry.facts_object()
             for name in (facts.get("name"), facts.get("export_sha256")):

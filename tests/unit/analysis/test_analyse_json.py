@@ -38,7 +38,7 @@ def test_what_the_context_says_is_in_it() -> None:
     assert found["schema"] == "qcreport/result/1"
     assert found["export"] == {"name": CONTEXT.export_name, "sha256": CONTEXT.export_sha256}
     assert found["plan"] == {"name": "made-by-hand", "sha256": CONTEXT.plan_sha256}
-    assert (found["run"]["k"], found["run"]["n"]) == (2, 2)
+    assert found["run"] == {"k": 2, "n": 2}
     assert found["versions"] == {
         "numpy": numpy.__version__,
         "qcreport": qcreport.__version__,

@@ -139,7 +139,7 @@ def _setting_up(commands: Commands) -> None:
     p.add_argument("--name", help="name of the laboratory")
     p.add_argument("--address", help="its address")
     p.add_argument("--time-zone", metavar="ZONE", help="IANA name, e.g. Europe/Berlin")
-    p.add_argument("--language", choices=("en",), help="language of reports")
+    p.add_argument("--language", choices=("de", "en"), help="language of reports")
     keys = _group(commands, "keys", "Make keys.")
     p = _add(keys, "keys new", "Make a key and its certificate.", site=True, json=False)
     p.add_argument("name", metavar="NAME", help="as printed on reports")

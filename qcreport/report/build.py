@@ -21,7 +21,7 @@ from qcreport.report.model import Letterhead, ReportModel, Running
 from qcreport.report.moments import local_time
 from qcreport.report.numbers import Numbers
 from qcreport.report.printable import with_printable_texts
-from qcreport.report.rounding import shortest
+from qcreport.report.rounding import decimal_mark, shortest
 from qcreport.report.words import words_for
 from qcreport.report.words_en import Words
 
@@ -58,20 +58,33 @@ def build_model(
     result, measurements = with_printable_texts((result, measurements), missing)
     plan, context = with_printable_texts((plan, context), missing)
     words = words_for(context.language, plan.groups)
+    with decimal_mark(words.DECIMAL_MARK):
+        return _built(result, measurements, plan, context, words, figure_on_first_page, missing)
+
+
+def _built(
+    result: Result,
+    measurements: MeasurementSet,
+    plan: ComparisonPlan,
+    context: Context,
+    words: Words,
+    figure_on_first_page: bool,
+    missing: set[str],
+) -> ReportModel:
     plans = {c.name: c for c in plan.characteristics}
     all_numbers = tuple(
-        Numbers(result=r, words=words, margin_text=_percent_margin(plans.get(r.name)))
+        Numbers(result=r, words=words, margin_text=_percent_margin(plans.get(r.name), words))
         for r in result.characteristics
     )
     said = tuple(f"U+{ord(c):04X}" for c in sorted(missing))
     return _model(result, measurements, plan, context, words, all_numbers, figure_on_first_page, said)
 
 
-def _percent_margin(plan: CharacteristicPlan | None) -> str:
+def _percent_margin(plan: CharacteristicPlan | None, words: Words) -> str:
     if plan is None or "%" not in plan.margin_text:
         return ""
-    target = f" of {shortest(plan.target)}" if plan.target is not None else ""
-    return plan.margin_text.strip() + target
+    text = plan.margin_text.strip()
+    return text if plan.target is None else words.margin_of_target(text, shortest(plan.target))
 
 
 def _model(
@@ -98,7 +111,7 @@ def _model(
         checking_section(context, words),
         terms_section(words),
     ]
-    made = local_time(context.made_at, context.time_zone)
+    made = local_time(context.made_at, context.time_zone, words.DATE)
     labels = tuple(dict.fromkeys(g.label for r in result.characteristics for g in r.groups))
     return ReportModel(
         language=context.language,

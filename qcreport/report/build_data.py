@@ -73,7 +73,7 @@ def value_in_cell(
     place = _place(cell) if only_sheet is not None else str(cell)
     printed = _printed(measurement, words)
     parts = [place, printed]
-    if measurement.text.strip() != printed:
+    if measurement.text.strip() not in (printed, printed.replace(words.DECIMAL_MARK, ".")):
         parts.append(words.stored(_held(measurement.text)))
     parts += [words.mark(m) for m in measurement.marks]
     if str(cell) in keys:

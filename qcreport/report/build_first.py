@@ -128,7 +128,11 @@ def _basis(
     words = all_numbers[0].words
     approval = " ".join(approval_texts(all_numbers[0], plan, read))
     rules = dict.fromkeys(
-        words.rule(words.procedure(n.result.procedure), n.result.rule.reason) for n in all_numbers
+        words.rule(
+            words.procedure(n.result.procedure),
+            words.reason(n.result.rule.table, n.result.rule.id, n.result.rule.reason),
+        )
+        for n in all_numbers
     )
     rate = words.rate_and_unit(
         shortest(plan.alpha), plan.independent_unit, export_wide=plan.family is Family.EXPORT
@@ -141,9 +145,9 @@ def _basis(
         ),
         words.product(plan.product.strip(), plan.method.strip()),
         words.dates(
-            local_time(context.received_at, context.time_zone),
-            earliest[:10] if earliest else None,
-            latest[:10] if latest else None,
+            local_time(context.received_at, context.time_zone, words.DATE),
+            words.date(earliest[:10]) if earliest else None,
+            words.date(latest[:10]) if latest else None,
         ),
         words.plan(plan.name, approval),
         " ".join([*list(rules)[:3], rate]),

@@ -37,7 +37,9 @@ def origin_section(result: Result, context: Context, words: Words) -> Section:
     facts = (
         (
             words.export_label(),
-            words.received(context.export_name, local_time(context.received_at, context.time_zone)),
+            words.received(
+                context.export_name, local_time(context.received_at, context.time_zone, words.DATE)
+            ),
         ),
         (words.run_label(), words.run(context.run_k, context.run_n, context.run_reason)),
         (words.software_label(), versions or f"qcreport {context.software_version}"),

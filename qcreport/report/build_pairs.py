@@ -14,7 +14,7 @@ from qcreport.report.figure_values import values_panel
 from qcreport.report.letters import letter_name, letters_of
 from qcreport.report.numbers import Numbers
 from qcreport.report.pairs import EXCLUDES_NULL, higher_first, most_serious_first
-from qcreport.report.rounding import shortest, significant
+from qcreport.report.rounding import shortest, significant, trimmed
 from qcreport.report.shapes import Drawing
 
 LETTERS_ABOVE = 8
@@ -125,7 +125,7 @@ def _after_pairs(numbers: Numbers) -> list[Block]:
     result, words = numbers.result, numbers.words
     blocks: list[Block] = []
     if result.all_within_margin is not None:
-        level = f"{shortest(float(significant((1 - 2 * result.alpha) * 100, 4)))} %"
+        level = f"{trimmed((1 - 2 * result.alpha) * 100, 4)} %"
         blocks.append(Paragraph(text=words.all_within_margin(result.all_within_margin, level)))
     blocks += [*contrast_blocks(numbers), *design_blocks(numbers), *effect_blocks(numbers)]
     if any(g.n <= 4 for g in result.groups):

@@ -36,12 +36,15 @@ def _characteristic(numbers: Numbers) -> list[Block]:
     rule = result.rule
     blocks: list[Block] = [
         Paragraph(text=words.why_intro(words.procedure(result.procedure), rule.table, rule.id)),
-        Paragraph(text=words.rule_reason(rule.reason, rule.source)),
+        Paragraph(text=words.rule_reason(words.reason(rule.table, rule.id, rule.reason), rule.source)),
     ]
     if rule.table == TEXTBOOK:
         blocks.append(Paragraph(text=words.textbook_rates()))
     if result.facts:
-        rows = tuple((f.fact.replace("_", " "), f.value, f.observed, f.source) for f in result.facts)
+        rows = tuple(
+            (words.fact(f.fact), words.fact_value(f.value), f.observed, words.fact_source(f.source))
+            for f in result.facts
+        )
         blocks.append(Table(columns=_columns(words.fact_heads(), (16, 18, 38, 28), ()), rows=rows))
     if result.checks:
         blocks.append(Paragraph(text=words.not_a_gate()))
@@ -96,10 +99,10 @@ def approval_texts(numbers: Numbers, plan: ComparisonPlan, read: MeasurementSet)
     if plan.approved is None:
         return [words.not_approved()]
     on = plan.approved.on.isoformat()
-    texts = [words.approved(plan.approved.by, on)]
+    texts = [words.approved(plan.approved.by, words.date(on))]
     earliest = earliest_time(read)
     if earliest is not None and on > earliest[:10]:
-        texts.append(words.set_after(on, earliest[:10]))
+        texts.append(words.set_after(words.date(on), words.date(earliest[:10])))
     return texts
 
 
@@ -109,7 +112,10 @@ def _plan_texts(numbers: Numbers, plan: ComparisonPlan, read: MeasurementSet) ->
         spread = plan.spread
         texts.append(
             numbers.words.declaration(
-                similar=spread.similar, by=spread.by, on=spread.on.isoformat(), reason=spread.reason
+                similar=spread.similar,
+                by=spread.by,
+                on=numbers.words.date(spread.on.isoformat()),
+                reason=spread.reason,
             )
         )
     return texts

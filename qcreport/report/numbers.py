@@ -13,8 +13,6 @@ from qcreport.report.rounding import (
     apart_from,
     fixed,
     probability,
-    shortest,
-    significant,
     trimmed,
 )
 from qcreport.report.words_en import Words
@@ -119,7 +117,8 @@ class Numbers:
         """Return a tail probability, kept apart from the error rate it is held against."""
         if value is None or not math.isfinite(value):
             return MISSING
-        return probability(value, near=self.result.alpha)
+        below, above = self.words.p_ends()
+        return probability(value, near=self.result.alpha, below=below, above=above)
 
     def said_p(self, value: float) -> str:
         """Return a tail probability for a sentence, after the letter p."""
@@ -128,9 +127,4 @@ class Numbers:
 
     def level(self) -> str:
         """Return the simultaneous level, e.g. `95 %`."""
-        return f"{shortest(float(significant_percent(1 - self.result.alpha)))} %"
-
-
-def significant_percent(share: float) -> str:
-    """Return a share as a percentage number with at most four significant digits."""
-    return significant(share * 100, 4).replace("−", "-")
+        return f"{trimmed((1 - self.result.alpha) * 100, 4)} %"

@@ -7,7 +7,9 @@ decimal digits faithfully, so each number is taken at 15 significant digits befo
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
+from contextlib import contextmanager
+from contextvars import ContextVar
 from decimal import ROUND_HALF_UP, Context, Decimal
 
 MINUS = "−"
@@ -16,6 +18,19 @@ LARGEST_DECIMALS = 8
 P_FLOOR = 1e-12
 _WIDE = Context(prec=60, rounding=ROUND_HALF_UP)
 _SUPERSCRIPTS = str.maketrans("0123456789-", "⁰¹²³⁴⁵⁶⁷⁸⁹⁻")
+
+
+_MARK: ContextVar[str] = ContextVar("decimal_mark", default=".")
+
+
+@contextmanager
+def decimal_mark(mark: str) -> Iterator[None]:
+    """Print every number inside with `mark` before its decimals, as the language of the report has it."""
+    before = _MARK.set(mark)
+    try:
+        yield
+    finally:
+        _MARK.reset(before)
 
 
 def to_decimal(value: float | str | Decimal) -> Decimal:
@@ -36,8 +51,8 @@ def round_half_up(value: float | str | Decimal, decimals: int) -> Decimal:
     return to_decimal(value).quantize(Decimal(1).scaleb(-decimals), context=_WIDE)
 
 
-def _with_minus(text: str) -> str:
-    return text.replace("-", MINUS)
+def _printed(text: str) -> str:
+    return text.replace("-", MINUS).replace(".", _MARK.get())
 
 
 def fixed(value: float | str | Decimal, decimals: int) -> str:
@@ -51,7 +66,7 @@ def fixed(value: float | str | Decimal, decimals: int) -> str:
     rounded = round_half_up(value, min(max(decimals, 0), LARGEST_DECIMALS))
     if rounded == 0:
         rounded = abs(rounded)
-    return _with_minus(format(rounded, "f"))
+    return _printed(format(rounded, "f"))
 
 
 def signed(value: float, decimals: int) -> str:
@@ -91,29 +106,29 @@ def significant(value: float, digits: int) -> str:
     exponent = rounded.adjusted()
     if exponent < -3 or exponent >= 9:
         return _power_of_ten(rounded, exponent, digits)
-    return _with_minus(format(rounded, "f"))
+    return _printed(format(rounded, "f"))
 
 
 def _power_of_ten(rounded: Decimal, exponent: int, digits: int) -> str:
     mantissa = round_half_up(rounded.scaleb(-exponent, context=_WIDE), digits - 1)
-    return (
-        f"{_with_minus(format(mantissa, 'f'))}\u00a0{TIMES}\u00a010{str(exponent).translate(_SUPERSCRIPTS)}"
-    )
+    return f"{_printed(format(mantissa, 'f'))}\u00a0{TIMES}\u00a010{str(exponent).translate(_SUPERSCRIPTS)}"
 
 
 def shortest(value: float) -> str:
     """Return `value` without digits it does not need: 1.5, 18, 0.05."""
     text = format(to_decimal(value).normalize(), "f")
-    return _with_minus(text)
+    return _printed(text)
 
 
 def trimmed(value: float, digits: int) -> str:
     """Return `value` with at most `digits` significant digits and no zeros at the end of its decimals."""
-    text = significant(value, digits)
-    return text.rstrip("0").rstrip(".") if "." in text and TIMES not in text else text
+    text, mark = significant(value, digits), _MARK.get()
+    return text.rstrip("0").rstrip(mark) if mark in text and TIMES not in text else text
 
 
-def probability(p: float, *, near: float | None = None) -> str:
+def probability(
+    p: float, *, near: float | None = None, below: str = "below {}", above: str = "above {}"
+) -> str:
     """Return a tail probability with two significant digits; more where it would read as `near`.
 
     Examples
@@ -122,9 +137,9 @@ def probability(p: float, *, near: float | None = None) -> str:
     ('0.014', 'below 10⁻¹²', 'above 0.99')
     """
     if p < P_FLOOR:
-        return "below 10⁻¹²"
+        return below.format("10⁻¹²")
     if round_half_up(p, 2) >= 1:
-        return "above 0.99"
+        return above.format(_printed("0.99"))
     digits = 2
     while near is not None and digits < 6 and p != near and _rounds_to(p, digits, near):
         digits += 1

@@ -13,6 +13,9 @@ from qcreport.report.words_en_sections import SectionWords
 class Words(AnswerWords, SectionWords, BesideWords, ArithmeticWords, CheckingWords, PageWords):
     """All texts of a report in English."""
 
+    DATE = "%Y-%m-%d"
+    DECIMAL_MARK = "."
+
     ANSWER = "Answer"
     EVERY_VALUE = "Every value"
     HOW_FAR_APART = "How far apart"

@@ -28,6 +28,10 @@ class AnswerWords(FigureWords):
         """Return what stands where there is no interval."""
         return "no interval"
 
+    def p_ends(self) -> tuple[str, str]:
+        """Return how a p too small or too near one is printed."""
+        return "below {}", "above {}"
+
     def open_by_limits(self) -> str:
         """Return what stands for an interval where values are known only by a limit."""
         return "open: known only by a limit"
@@ -67,6 +71,10 @@ class AnswerWords(FigureWords):
         if above is not None:
             parts.append(f"{above} {unit}".strip() + " upwards")
         return ", ".join(parts)
+
+    def margin_of_target(self, text: str, target: str) -> str:
+        """Return a margin given as a share of a target."""
+        return f"{text} of {target}"
 
     def ratio_margin(self, below: str | None, above: str | None) -> str:
         """Return a margin on the log scale."""

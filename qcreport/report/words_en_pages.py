@@ -41,6 +41,10 @@ class PageWords(FigureWords):
             return whole
         return f"{len(labels)} {self.group_plural}"
 
+    def date(self, iso: str) -> str:
+        """Return a date from its ISO form."""
+        return iso
+
     def place_of_work(self, place: str) -> str:
         """Return where the work was done."""
         return f"Place of work: {place}"

@@ -143,6 +143,22 @@ class SectionWords(FigureWords):
         row = self.row_name(row)
         return f"{procedure}, chosen by row “{row}” of the rules table “{table}”, read from top to bottom."
 
+    def fact(self, name: str) -> str:
+        """Return the name of a fact."""
+        return name.replace("_", " ")
+
+    def fact_value(self, value: str) -> str:
+        """Return what a fact says."""
+        return value
+
+    def fact_source(self, source: str) -> str:
+        """Return where a fact comes from."""
+        return source
+
+    def reason(self, table: str, row: str, reason: str) -> str:
+        """Return a row's reason, as the table gives it."""
+        return reason
+
     def rule_reason(self, reason: str, source: str) -> str:
         """Return the row's reason and what it rests on."""
         reason = reason.strip().rstrip(".")

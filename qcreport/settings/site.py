@@ -16,7 +16,7 @@ from qcreport.toml_source import TableReader, TomlSource
 from qcreport.workbook.limits import Limits
 
 SITE_FILE: Final = "config/site.toml"
-LANGUAGES: Final = ("en",)
+LANGUAGES: Final = ("de", "en")
 PAGE_SIZES: Final = ("A4", "Letter")
 
 

@@ -13,7 +13,7 @@ _QUESTIONS = (
     ("name", "Name of the laboratory"),
     ("address", "Its address"),
     ("time_zone", "Time zone, IANA name such as Europe/Berlin"),
-    ("language", "Language of reports (en)"),
+    ("language", "Language of reports (en or de)"),
 )
 
 

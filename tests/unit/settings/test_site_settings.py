@@ -70,7 +70,7 @@ class TestParse:
         [
             ("lab", 'nmae = "x"', 'unknown key; did you mean "name"?'),
             ("lab", 'demonstration = "no"', "must be true or false"),
-            ("lab", 'language = "de"', "must be one of 'en', found 'de'"),
+            ("lab", 'language = "fr"', "must be one of 'de', 'en', found 'fr'"),
             ("folders", 'inbox = ""', "must not be blank"),
             ("folders", "inbox = 1", "must be a text"),
             ("folders", 'reports = "inbox"', "must be a folder of its own, found that of inbox"),

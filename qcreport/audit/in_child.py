@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+from base64 import b64encode
+from collections.abc import Mapping
 from datetime import datetime
 from typing import TYPE_CHECKING, Any
 
+from qcreport.analysis.context import Signer
 from qcreport.audit.verdict import Json, not_judged
 from qcreport.signing.limited import StoppedError, ask, module_command
 from qcreport.signing.limits import VerifyLimits
@@ -22,6 +25,8 @@ def verify_in_child(
     roots: tuple[x509.Certificate, ...] | None,
     now: datetime,
     recompute: bool = True,
+    people: tuple[Signer, ...] = (),
+    templates: Mapping[str, bytes] | None = None,
     limits: VerifyLimits | None = None,
 ) -> Json:
     """Check one report in a limited process and return the document `qcreport/verify/1`.
@@ -40,6 +45,8 @@ def verify_in_child(
         "roots": None if roots is None else [_pem(root) for root in roots],
         "now": now.isoformat(),
         "recompute": recompute,
+        "people": [person.to_json() for person in people],
+        "templates": None if templates is None else {n: b64encode(t).decode() for n, t in templates.items()},
     }
     try:
         return ask(_COMMAND, order, pdf, limits if limits is not None else VerifyLimits())

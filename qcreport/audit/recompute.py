@@ -2,14 +2,32 @@
 
 from __future__ import annotations
 
-from typing import Any
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 from qcreport.audit.evidence import Evidence
 from qcreport.errors import NotOurReportError
 
+if TYPE_CHECKING:
+    from qcreport.analysis.result import Result
+    from qcreport.measurements import MeasurementSet
+    from qcreport.plan import ComparisonPlan
 
-def recompute_result(evidence: Evidence) -> dict[str, Any]:
-    """Return `result.json` as this installation computes it from the attachments.
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Anew:
+    """A result computed anew, with what it was computed from."""
+
+    result: Result
+    """As this installation computes it."""
+    measurements: MeasurementSet
+    """As the reader child reads the attached export."""
+    plan: ComparisonPlan
+    """The attached plan."""
+
+
+def recompute_result(evidence: Evidence) -> Anew:
+    """Return the result as this installation computes it from the attachments.
 
     The export is read in the reader child, as a dropped one is.
 
@@ -35,4 +53,4 @@ def recompute_result(evidence: Evidence) -> dict[str, Any]:
         layout_bytes=files["layout.toml"],
         layout_file="layout.toml",
     )
-    return analyse(measurements, plan, rules, context).to_json()
+    return Anew(result=analyse(measurements, plan, rules, context), measurements=measurements, plan=plan)

@@ -4,9 +4,14 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from datetime import datetime
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
+import qcreport
 from qcreport.signing.status import PdfStatus, SignatureStatus
+
+if TYPE_CHECKING:
+    from qcreport.audit.pages import PagesStatus
+    from qcreport.audit.signers import Explained
 
 Json = dict[str, Any]
 VERIFY_SCHEMA = "qcreport/verify/1"
@@ -53,6 +58,7 @@ class RecomputedStatus:
         }
 
 
+NOT_ASKED_FOR = "not asked for"
 NOT_ASKED = RecomputedStatus(done=False, matches=None, differences=(), notes=())
 
 
@@ -66,6 +72,12 @@ class VerifyStatus:
     """All that a report must carry."""
     recomputed: RecomputedStatus
     """Whether the numbers repeat."""
+    pages: PagesStatus
+    """Whether the pages show what the result says."""
+    explained: tuple[Explained, ...]
+    """Each person's signature in plain words, in the order in which they were made."""
+    made_with: str | None
+    """Version of qcreport that made the report."""
     report: str | None
     """Number of the report, from its context."""
     problems: tuple[str, ...]
@@ -79,6 +91,7 @@ class VerifyStatus:
             and not self.problems
             and all(a.matches for a in self.attachments)
             and self.recomputed.matches is not False
+            and self.pages.matches is not False
         )
 
     @property
@@ -94,9 +107,12 @@ class VerifyStatus:
             "valid": self.valid,
             "trusted": self.trusted,
             "sealed": _seal(self.pdf.seal),
-            "signatures": [_signature(s) for s in self.pdf.signatures],
+            "signatures": [_signature(e) for e in self.explained],
             "attachments": [a.to_json() for a in self.attachments],
             "recomputed": self.recomputed.to_json(),
+            "pages": self.pages.to_json(),
+            "versions": {"report": self.made_with, "here": qcreport.__version__},
+            "records": None,
             "pades_level": self.pdf.pades_level,
             "changed_after_seal": self.pdf.changed_after_seal,
             "problems": [*self.pdf.problems, *self.problems, *_attachment_problems(self.attachments)],
@@ -115,6 +131,9 @@ def not_judged(reason: str) -> Json:
         "signatures": [],
         "attachments": [],
         "recomputed": {"matches": False, "differences": [reason], "done": False, "notes": []},
+        "pages": {"matches": None, "differences": [], "reason": reason},
+        "versions": {"report": None, "here": qcreport.__version__},
+        "records": None,
         "pades_level": None,
         "changed_after_seal": False,
         "problems": [reason],
@@ -138,7 +157,8 @@ def _seal(seal: SignatureStatus) -> Json:
     }
 
 
-def _signature(status: SignatureStatus) -> Json:
+def _signature(explained: Explained) -> Json:
+    status = explained.status
     return {
         "name": status.signer,
         "meaning": status.meaning,
@@ -149,6 +169,7 @@ def _signature(status: SignatureStatus) -> Json:
         "fingerprint_sha256": status.fingerprint_sha256,
         "problems": list(status.problems),
         "notes": list(status.notes),
+        "explanation": explained.text,
     }
 
 

@@ -6,6 +6,7 @@ import unicodedata
 from collections.abc import Iterator, Mapping
 from typing import Any
 
+from qcreport.audit.verdict import NOT_ASKED_FOR
 from qcreport.canonical import in_groups_of_eight
 
 _LONGEST = 300
@@ -34,6 +35,7 @@ def _lines(verdict: Mapping[str, Any]) -> Iterator[str]:
     yield from _seal_lines(verdict)
     for signature in verdict["signatures"]:
         yield from _signature_lines(signature)
+    yield from _more(verdict)
     for note in verdict["recomputed"]["notes"]:
         yield f"Note: {note}."
 
@@ -48,6 +50,8 @@ def _answer(verdict: Mapping[str, Any]) -> str:
     repeats = "computed anew from them, every number repeats"
     if verdict["recomputed"]["matches"] is None:
         repeats = "the numbers were not computed anew"
+    if verdict["pages"]["matches"]:
+        repeats += ", and the pages show them"
     return f"Valid: {added}; all {len(verdict['attachments'])} attachments match; {repeats}."
 
 
@@ -64,6 +68,8 @@ def _first_reason(verdict: Mapping[str, Any]) -> str:
         return f"{len(wrong)} of {total} attachments {verb} not match: {', '.join(wrong)}"
     if verdict["problems"]:
         return str(verdict["problems"][0])
+    if verdict["pages"]["matches"] is False:
+        return "its pages do not show what its result says"
     if recomputed["done"]:
         found = _counted(len(recomputed["differences"]), "value does", "values do")
         return f"{found} not repeat when computed anew"
@@ -77,7 +83,7 @@ def _against(verdict: Mapping[str, Any]) -> Iterator[str]:
     reasons = [*verdict["sealed"]["problems"], *verdict["problems"]]
     for reason in dict.fromkeys(reasons):
         yield f"  - {reason}"
-    differences = verdict["recomputed"]["differences"]
+    differences = [*verdict["recomputed"]["differences"], *verdict["pages"]["differences"]]
     for difference in differences[:_SHOWN_DIFFERENCES]:
         if difference not in reasons:
             yield f"  - {difference}"
@@ -108,11 +114,21 @@ def _signature_lines(signature: Mapping[str, Any]) -> Iterator[str]:
     meaning = f", meaning {signature['meaning']!r}" if signature["meaning"] else ""
     name = signature["name"] or "somebody who cannot be read"
     yield f"Signed in the field {signature['field']} by {name}{meaning}, {_when(signature)}."
-    if not signature["valid"]:
-        why = "; ".join(signature["problems"]) or "the report was changed after it"
-        yield f"  That signature does not hold: {why}."
-    elif signature["trusted"] is not True:
-        yield "  Who made that signature is not proven."
+    yield f"  That is: {signature['explanation']}."
+    for note in signature["notes"]:
+        yield f"  Note: {note}."
+
+
+def _more(verdict: Mapping[str, Any]) -> Iterator[str]:
+    """Yield what was not compared, what the records say, and the versions."""
+    pages = verdict["pages"]
+    if pages["matches"] is None and verdict["recomputed"]["done"] and pages["reason"] != NOT_ASKED_FOR:
+        yield f"The pages were not compared with the result: {pages['reason']}."
+    if verdict["records"] is not None and verdict["records"]["state"] is not None:
+        yield f"By the records of the site the report is {verdict['records']['state']}."
+    made, here = verdict["versions"]["report"], verdict["versions"]["here"]
+    if made is not None and made != here:
+        yield f"Made with qcreport {made}, checked with {here}."
 
 
 def _when(signature: Mapping[str, Any]) -> str:

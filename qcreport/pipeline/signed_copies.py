@@ -113,6 +113,6 @@ def _refused(name: str, number: str, text: str) -> ExportRefusedError:
         file=one_line(name),
         where=f"the signed copy of report {number}",
         found=text,
-        expected="The newest version of the report with one signature added, by a person named in people.toml.",
+        expected="The newest version with one signature added, by a person whom people.toml names.",
         next_step=f"Open {number} in the folder of reports, sign it in its field, and drop that copy here.",
     )

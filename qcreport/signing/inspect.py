@@ -20,7 +20,14 @@ SEALED_REVISION = 1
 """A report is rewritten in one revision and sealed in the next; the first has number 0."""
 
 
-def inspect_pdf(pdf: bytes, *, roots: tuple[x509.Certificate, ...] | None, at: datetime) -> PdfStatus:
+def inspect_pdf(
+    pdf: bytes,
+    *,
+    roots: tuple[x509.Certificate, ...] | None,
+    at: datetime,
+    pinned: frozenset[str] = frozenset(),
+    vouched: frozenset[str] = frozenset(),
+) -> PdfStatus:
     """Judge every signature of a sealed PDF and everything appended after the seal.
 
     Parameters
@@ -32,6 +39,10 @@ def inspect_pdf(pdf: bytes, *, roots: tuple[x509.Certificate, ...] | None, at: d
         trust undecided. Neither the file nor the operating system adds any, and nothing is fetched.
     at : datetime
         Aware; the moment of judging.
+    pinned : frozenset of str
+        SHA-256 of persons' certificates that are trusted as they are.
+    vouched : frozenset of str
+        The same, where the seal names them: they count only if the seal holds and is trusted.
 
     Returns
     -------
@@ -53,7 +64,8 @@ def inspect_pdf(pdf: bytes, *, roots: tuple[x509.Certificate, ...] | None, at: d
         known = None if roots is None else tuple(to_asn1(root) for root in roots)
         seal = judge(opened, opened.seal, known, at)
         rest = [s for s in opened.signatures if s is not opened.seal]
-        others = tuple(judge(opened, s, known, at, seal=seal) for s in rest)
+        persons = pinned | vouched if seal.ok else pinned
+        others = tuple(judge(opened, s, known, at, seal=seal, pinned=persons) for s in rest)
         lost = lost_signatures(opened)
         changed = (_appended(opened) and not seal.later_changes_allowed) or _trailing(opened) or bool(lost)
         return PdfStatus(

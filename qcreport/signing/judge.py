@@ -48,11 +48,13 @@ def judge(
     at: datetime,
     *,
     seal: SignatureStatus | None = None,
+    pinned: frozenset[str] = frozenset(),
 ) -> SignatureStatus:
     """Return the status of one signature; never raises over what the signature holds.
 
     What was appended after the seal is compared once, for the seal. Whatever may follow the seal may follow
-    a later signature too, so the others take that answer from the status of the seal, given as `seal`.
+    a later signature too, so the others take that answer from the status of the seal, given as `seal`. A
+    certificate whose digest is `pinned` is its own root.
 
     A certificate is judged at the stated time of signing, because a report outlives the certificate of its
     seal; that the time is only stated, and that the certificate has ended since, is told in the notes.
@@ -61,7 +63,8 @@ def judge(
     certificate = _attempt(lambda: signature.signer_cert)
     stated = _stated_time(signature)
     moment = stated if stated is not None and stated <= at else at
-    raw = _validated(signature, _context(roots, moment), seal)
+    own = (certificate,) if certificate is not None and certificate.sha256.hex() in pinned else ()
+    raw = _validated(signature, _context((*(roots or ()), *own), moment), seal)
     problems = (*((raw.problem,) if raw.problem else ()), *_problems(opened, signature, stated, at))
     in_time = certificate is not None and _in_time(certificate, moment)
     return SignatureStatus(

@@ -27,6 +27,7 @@ def limited(monkeypatch: pytest.MonkeyPatch) -> list[tuple[int, tuple[int, int]]
 
 def answer(pdf: bytes, roots: list[str] | None, monkeypatch: pytest.MonkeyPatch) -> dict[str, Any]:
     order = {"memory_bytes": 1 << 30, "cpu_s": 7, "roots": roots, "now": LATER.isoformat(), "recompute": True}
+    order |= {"people": [], "templates": None}
     given = io.BytesIO(json.dumps(order).encode() + b"\n" + pdf)
     out = io.StringIO()
     monkeypatch.setattr(sys, "stdin", SimpleNamespace(buffer=given))

@@ -13,10 +13,10 @@ from signing.conftest import LATER
 
 from qcreport.audit import in_child
 from qcreport.audit.in_child import verify_in_child
-from qcreport.signing.limits import VerifyLimits
 from qcreport.audit.verify import verify_report
 from qcreport.errors import EnvironmentFailedError, NotOurReportError
 from qcreport.signing.keys import SigningKey
+from qcreport.signing.limits import VerifyLimits
 
 from .schema import schema
 

@@ -7,6 +7,7 @@ from typing import Any
 import pytest
 from signing.appending import countersigned, with_changed_page
 from signing.conftest import LATER
+from signing.keys_fixture import key_of
 
 from qcreport.audit.verdict import not_judged
 from qcreport.audit.verify import verify_report
@@ -50,15 +51,19 @@ def test_an_untrusted_key_is_said_to_be_one(report: bytes, person_key: SigningKe
 
 
 def test_signatures_are_told(report: bytes, service_key: SigningKey, person_key: SigningKey) -> None:
-    pdf = countersigned(countersigned(report, person_key, "Reviewed"), service_key, "Authorised")
+    other = key_of("B. Authoriser", purpose="person")
+    pdf = countersigned(countersigned(report, person_key, "Reviewed"), other, "Authorised")
     told = lines(pdf, service_key)
     assert "since it was sealed only 2 signatures were added" in told[1]
     place = told.index(
         "Signed in the field Reviewed by A. Reviewer, meaning 'Review', stated time 2026-11-02T06:12:00Z."
     )
-    assert told[place + 1] == "Who made that signature is not proven."
-    assert told[place + 2].startswith("Signed in the field Authorised by QC reports")
-    assert len(told) == place + 3
+    assert told[place + 1] == (
+        "That is: somebody whose certificate says A. Reviewer signed the report as reviewed; neither the "
+        "report's seal nor the certificates given vouch for that certificate."
+    )
+    assert told[place + 3].startswith("Signed in the field Authorised by B. Authoriser")
+    assert len(told) == place + 6
 
 
 def test_one_attachment_that_does_not_match(files: dict[str, bytes], service_key: SigningKey) -> None:
@@ -138,8 +143,10 @@ def test_a_signature_that_does_not_hold_is_told() -> None:
     }
     verdict = {
         **not_judged("x"),
-        "signatures": [{**signature, "trusted": False, "problems": [], "notes": []}],
+        "signatures": [
+            {**signature, "trusted": False, "problems": [], "notes": [], "explanation": "it does not hold"}
+        ],
     }
     told = verdict_lines(verdict)
     assert "Signed in the field Reviewed by somebody who cannot be read, no time stated." in told
-    assert told[-1] == "That signature does not hold: the report was changed after it."
+    assert told[-1] == "That is: it does not hold."

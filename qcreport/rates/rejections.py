@@ -81,6 +81,10 @@ def _weighted(procedure: str, design: Design, draws: Draws) -> Found:
     return found
 
 
+def _nothing(procedure: str, design: Design, draws: Draws) -> Found:
+    return np.zeros(draws.means.shape[1], dtype=bool)
+
+
 def _law(law: str, design: Design) -> tuple[str, int]:
     if law == "range":
         return law, len(design.sizes)
@@ -106,5 +110,6 @@ PROCEDURES: Final[dict[str, Callable[[str, Design, Draws], Found]]] = {
     **dict.fromkeys(("tukey_hsd", "tukey_kramer", "dunnett"), _pooled),
     **dict.fromkeys(_BY_PAIR_DF, _by_pair_df),
     **dict.fromkeys(_WEIGHTED, _weighted),
+    "none": _nothing,
 }
-"""Procedures that compare means."""
+"""Procedures that compare means, and the one that compares nothing."""

@@ -53,7 +53,7 @@ class Asked:
         return _chosen(self.table, self.facts, self.procedure)
 
     def on_means(self) -> bool:
-        """Return whether every procedure that may be chosen compares means."""
+        """Return whether every procedure that may be chosen compares means, or nothing."""
         return set(self.chosen().values()) <= set(PROCEDURES)
 
 

@@ -46,6 +46,10 @@ def test_the_procedure_fits_the_facts(table: RulesTable, facts: Facts) -> None:
     if facts.groups < 2 or facts.variation == "none":
         assert procedure == "none"
         return
+    if procedure == "none":  # only where nothing here would keep the error rate
+        assert facts.comparison == "each with the reference"
+        assert (facts.smallest_n <= 3, facts.groups > 10, facts.spread != "similar") == (True, True, True)
+        return
     assert (procedure in WITH_REFERENCE) is (facts.comparison == "each with the reference")
     assert (procedure in ("steel", "steel_dwass")) is (facts.censored == "some")
     if facts.sizes == "unequal":

@@ -109,6 +109,20 @@ DEFAULT_ROWS = [
     ({"comparison": "each with the reference", "smallest_n": 9, "groups": 10}, "dunnett_weighted"),
     ({"comparison": "each with the reference", "smallest_n": 10, "groups": 11}, "dunnett_weighted"),
     ({"comparison": "each with the reference", "smallest_n": 3, "groups": 3}, "dunnett_weighted"),
+    # 5a: but not three results with more than nine comparisons, a small one against a large reference
+    (
+        {"comparison": "each with the reference", "smallest_n": 3, "groups": 11, "sizes": "unequal"},
+        "none",
+    ),
+    (
+        {"comparison": "each with the reference", "smallest_n": 3, "groups": 10, "sizes": "unequal"},
+        "dunnett_weighted",
+    ),
+    (
+        {"comparison": "each with the reference", "smallest_n": 4, "groups": 20, "sizes": "unequal"},
+        "dunnett_weighted",
+    ),
+    ({"comparison": "each with the reference", "smallest_n": 3, "groups": 20}, "dunnett_weighted"),
     # 6, 7: every pair, spread similar
     ({"spread": "similar", "sizes": "equal"}, "tukey_hsd"),
     ({"spread": "similar", "sizes": "equal", "smallest_n": 3, "groups": 20}, "tukey_hsd"),

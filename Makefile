@@ -5,7 +5,7 @@ BIN := .venv/bin
 DEMO_DIR ?= demo-site
 LOCK_FLAGS ?=
 
-.PHONY: help setup demo test bench lock fresh clean
+.PHONY: help setup demo test bench rates lock fresh clean
 
 help: ## list the targets
 	@awk -F ':.*## ' '/^[a-z]+:.*## / { printf "make %-7s %s\n", $$1, $$2 }' $(MAKEFILE_LIST)
@@ -26,6 +26,9 @@ test: setup ## format, lint, types, layers, then all tests
 
 bench: setup ## measure accuracy, speed and memory; fails where a goal is missed
 	@code=0; for file in tests/benchmarks/*_bench.py; do $(BIN)/python $$file || code=1; done; exit $$code
+
+rates: setup ## simulate the published error rates anew: docs/rates.csv, docs/rates.svg (can be interrupted)
+	OMP_NUM_THREADS=1 OPENBLAS_NUM_THREADS=1 $(BIN)/python tests/rates/rates_run.py --jobs 2
 
 lock: ## renew requirements.lock after a change of pyproject.toml (newer releases: LOCK_FLAGS=--upgrade); needs uv
 	@command -v uv >/dev/null || { echo "make lock needs uv: python3 -m pip install uv" >&2; exit 1; }

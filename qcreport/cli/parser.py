@@ -119,6 +119,7 @@ def _compare(commands: Commands) -> None:
     p.add_argument("export", metavar="EXPORT", help="the export; it stays where it is")
     p.add_argument("--plan", metavar="NAME|FILE", help="use this plan, whatever the file's name")
     p.add_argument("--out", metavar="DIR", help="also write NUMBER.pdf and result.json there")
+    p.add_argument("--workbook", action="store_true", help="with --out: also results.xlsx, real numbers")
     p.add_argument("--no-report", action="store_true", help="compute and record, seal no report")
     p.add_argument(
         "--leave-out",

@@ -27,6 +27,8 @@ def run(arguments: argparse.Namespace) -> int:
     """Compare one export by every plan that fits; it stays where it is, refused or not."""
     site = load_site(Path(arguments.site))
     received = _received(Path(arguments.export), site)
+    if arguments.workbook and arguments.out is None:
+        raise UsageError("--workbook needs a folder to write to: --out DIR")
     _wish(arguments).require_reason()
     with opened(site, now, workers=1, seals=not arguments.no_report, progress=_progress) as work:
         if len(received.data) > site.limits.max_file_bytes:
@@ -49,7 +51,7 @@ def run(arguments: argparse.Namespace) -> int:
 
 def _tell(outcome: Outcome, arguments: argparse.Namespace, *, several: bool) -> None:
     if arguments.out is not None:
-        _write_out(Path(arguments.out), outcome, several=several)
+        _write_out(Path(arguments.out), outcome, several=several, workbook=arguments.workbook)
     if arguments.json:
         sys.stdout.write(outcome.result.decode("utf-8"))
     else:
@@ -134,10 +136,14 @@ def _refused(
     return REFUSED
 
 
-def _write_out(folder: Path, outcome: Outcome, *, several: bool) -> None:
+def _write_out(folder: Path, outcome: Outcome, *, several: bool, workbook: bool) -> None:
     make_folder(folder)
     name = f"{outcome.plan_name}.result.json" if several else "result.json"
     write_durably(folder / name, outcome.result)
+    if workbook:
+        from qcreport.report.results_workbook import results_workbook
+
+        write_durably(folder / name.replace("result.json", "results.xlsx"), results_workbook(outcome.result))
     if isinstance(outcome, Reported):
         try:
             report = outcome.path.read_bytes()

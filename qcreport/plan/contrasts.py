@@ -28,12 +28,12 @@ def _contrast(reader: TableReader) -> ContrastPlan:
     weights = tuple((label, float(table.number(label, 0.0) or 0.0)) for label in table.names())
     total = math.fsum(weight for _, weight in weights)
     largest = max((abs(weight) for _, weight in weights), default=0.0)
-    if "weights" in reader and not largest:
+    given = reader.raw("weights", None)
+    if not isinstance(given, dict) or dict(weights) != given:
+        pass  # no table of numbers: that fault is noted
+    elif not largest:
         reader.fault("weights", "name the groups with their weights, some of them other than 0")
     elif abs(total) > _ROUNDING * largest:
-        reader.fault(
-            "weights",
-            f"must sum to 0, found a sum of {total:g}. Whole numbers sum exactly: 1, 1, -2 in place of 0.5, "
-            "0.5, -1; thirds as 2, -1, -1",
-        )
+        words = f"must sum to 0, found a sum of {total:g}. Whole numbers sum exactly: 2, -1, -1 for thirds"
+        reader.fault("weights", words)
     return ContrastPlan(name=name, weights=tuple((label, w) for label, w in weights if w))

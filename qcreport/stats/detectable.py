@@ -10,7 +10,7 @@ from scipy import special
 
 from qcreport.errors import DegenerateDataError
 from qcreport.stats.comparison import require_alpha
-from qcreport.stats.distributions.student import chi_squared_upper_quantile
+from qcreport.stats.distributions.student import chi_squared_upper_quantile, far_noncentrality, is_far
 
 _LARGEST_DF = 1e7
 _CLOSE = 1e-13
@@ -64,6 +64,8 @@ def noncentrality(df: float | None, critical_value: float, power: float) -> floa
     normal = max(critical_value + float(special.ndtri(power)), 0.0)
     if df is None or df > _LARGEST_DF:
         return normal
+    if is_far(critical_value, df):
+        return far_noncentrality(critical_value, df, 1.0 - power)
     return _root(lambda nc: float(special.nctdtr(df, nc, critical_value)) - (1.0 - power), normal)
 
 

@@ -10,8 +10,12 @@ from scipy import special
 
 from qcreport.errors import DegenerateDataError
 from qcreport.stats.comparison import require_alpha
+from qcreport.stats.distributions.student import chi_squared_upper_quantile, far_noncentrality, is_far
 from qcreport.stats.one_way import AnovaResult
 from qcreport.stats.summary import GroupSummary, mean_difference, require_groups
+
+_FAR_NONCENTRALITY = 1e8
+"""From here the limits of omega squared need no series, which get slow; they are right to 1e-14."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -117,6 +121,8 @@ def omega_squared(result: AnovaResult, confidence: float = 0.90) -> EffectSize:
 
 def _noncentral_t_limit(t: float, df: float, level: float) -> float:
     """Return the noncentrality at which P(T <= t) = level."""
+    if is_far(abs(t), df):
+        return far_noncentrality(t, df, level) if t > 0.0 else -far_noncentrality(-t, df, 1.0 - level)
     return _crossing(lambda nc: _noncentral_t(t, df, nc) - level, -abs(t) - 10.0, abs(t) + 10.0)
 
 
@@ -132,6 +138,8 @@ def _noncentral_f_limit(result: AnovaResult, level: float) -> float:
     def excess(nc: float) -> float:
         return float(special.ncfdtr(between, within, nc, f)) - level
 
+    if between * f >= _FAR_NONCENTRALITY:  # the noncentral chi-squared is as good as its noncentrality
+        return between * (f * chi_squared_upper_quantile(level, within) / within - 1.0)
     if excess(0.0) <= 0.0:
         return 0.0
     return _crossing(excess, 0.0, between * f + 50.0)

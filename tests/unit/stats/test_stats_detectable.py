@@ -1,5 +1,6 @@
 import math
 
+import numpy as np
 import pytest
 from scipy import integrate, stats
 
@@ -31,6 +32,18 @@ def test_detectable_difference_with_one_df_and_high_power() -> None:
     delta = detectable_difference(1.0, 1.0, 40.0, 0.99)
     assert delta > 2.0 * (40.0 + 2.33)
     assert power_by_definition(delta, 1.0, 40.0) == pytest.approx(0.99, abs=1e-6)
+
+
+@pytest.mark.parametrize(("df", "critical"), [(1.0, 2e3), (2.0, 5e5), (40.0, 1e7)])
+@pytest.mark.parametrize("power", [0.5, 0.8])
+def test_detectable_difference_far_out(df: float, critical: float, power: float) -> None:
+    """There the normal deviate hardly counts: the difference is critical times a quantile of the scatter."""
+    delta = detectable_difference(1.0, df, critical, power)
+    assert delta == pytest.approx(critical * math.sqrt(stats.chi2.ppf(power, df) / df), rel=1e-5)
+    below = stats.chi(df, scale=critical / math.sqrt(df))
+    grid = np.linspace(-9.0, 9.0, 20_001)  # P(critical S - Z < delta) by a fine sum over Z
+    share = np.sum(below.cdf(delta + grid) * stats.norm.pdf(grid)) * (grid[1] - grid[0])
+    assert share == pytest.approx(power, abs=1e-9)
 
 
 def test_known_scatter_is_the_limit_of_many_df() -> None:

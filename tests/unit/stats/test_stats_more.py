@@ -159,6 +159,20 @@ def test_hedges_g_limits_invert_the_noncentral_t() -> None:
     assert (mirrored.lower, mirrored.upper) == pytest.approx((-g.upper, -g.lower), rel=1e-9)
 
 
+def test_effects_of_groups_that_lie_far_apart() -> None:
+    """A million standard deviations: the limits are those of the scatter alone."""
+    a, b = summarize("A", [1.0, 2.0, 3.0, 4.0]), summarize("B", [1e6 + x for x in (1.0, 2.0, 3.0, 4.0)])
+    g = hedges_g(b, a)
+    for end, tail in ((g.lower, 0.975), (g.upper, 0.025)):
+        assert end / g.value == pytest.approx(math.sqrt(stats.chi2.isf(tail, 6) / 6), rel=1e-9)
+    mirrored = hedges_g(a, b)
+    assert (mirrored.lower, mirrored.upper) == pytest.approx((-g.upper, -g.lower), rel=1e-12)
+    share = omega_squared(anova([a, b]))
+    assert share.lower < share.value < share.upper < 1.0
+    noncentrality = share.upper / (1.0 - share.upper) * 8.0
+    assert noncentrality == pytest.approx(anova([a, b]).statistic * stats.chi2.isf(0.05, 6) / 6, rel=1e-3)
+
+
 def test_hedges_g_needs_scatter() -> None:
     flat = summarize("F", [1.0, 1.0])
     with pytest.raises(DegenerateDataError):

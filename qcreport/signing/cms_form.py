@@ -31,8 +31,7 @@ def _oddities(pdf: bytes, signature: EmbeddedPdfSignature) -> Iterator[str]:
     used = _der_length(content)
     if used is None or content[used:].strip(b"\0"):
         yield "the unused room beside the signature is not empty"
-    if signature.field_name == SEAL_FIELD:
-        yield from _disagreements(signature)
+    yield from _disagreements(signature, strict=signature.field_name == SEAL_FIELD)
 
 
 def _der_length(content: bytes) -> int | None:
@@ -45,12 +44,18 @@ def _der_length(content: bytes) -> int | None:
     return 2 + octets + int.from_bytes(content[2 : 2 + octets], "big")
 
 
-def _disagreements(signature: EmbeddedPdfSignature) -> Iterator[str]:
-    """Yield where a seal differs from the one way in which we write it; others' programs write otherwise."""
+def _disagreements(signature: EmbeddedPdfSignature, *, strict: bool) -> Iterator[str]:
+    """Yield where a signature says two things; `strict` for a seal, which is written in one way only.
+
+    Other programs may list their digest with parameters or without, yet never leave it out.
+    """
     data, signer = signature.signed_data, signature.signer_info
-    digests = [algorithm.dump() for algorithm in data["digest_algorithms"]]
-    own = signer["digest_algorithm"]
-    if digests != [own.dump()] or own["parameters"].native is not None:
+    listed, own = list(data["digest_algorithms"]), signer["digest_algorithm"]
+    if strict:
+        agrees = [algorithm.dump() for algorithm in listed] == [own.dump()]
+    else:
+        agrees = own["algorithm"].dotted in {algorithm["algorithm"].dotted for algorithm in listed}
+    if not agrees or any(algorithm["parameters"].native is not None for algorithm in (own, *listed)):
         yield "the signature names its digest in two ways"
     # RFC 5652, 5.1 and 5.3: the versions follow from what the signature holds.
     expected = "v1" if signer["sid"].name == "issuer_and_serial_number" else "v3"

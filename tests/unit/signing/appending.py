@@ -23,7 +23,7 @@ def countersigned(pdf: bytes, key: SigningKey, field: str, meaning: str = "Revie
     return add_signature(pdf, key, metadata, NOW)
 
 
-def _written(writer: IncrementalPdfFileWriter) -> bytes:
+def written(writer: IncrementalPdfFileWriter) -> bytes:
     out = BytesIO()
     writer.write(out)
     return out.getvalue()
@@ -39,7 +39,7 @@ def with_swapped_attachment(pdf: bytes, name: str, content: bytes) -> bytes:
     stream["/Type"] = generic.pdf_name("/EmbeddedFile")
     specification["/EF"]["/F"] = writer.add_object(stream)
     writer.update_container(specification["/EF"])
-    return _written(writer)
+    return written(writer)
 
 
 def with_changed_page(pdf: bytes) -> bytes:
@@ -48,7 +48,7 @@ def with_changed_page(pdf: bytes) -> bytes:
     page = writer.root["/Pages"]["/Kids"][0]
     page["/Contents"] = writer.add_object(generic.StreamObject(stream_data=b"0 0 100 100 re f"))
     writer.update_container(page)
-    return _written(writer)
+    return written(writer)
 
 
 def _field(writer: IncrementalPdfFileWriter, name: str) -> generic.DictionaryObject:
@@ -62,7 +62,7 @@ def with_moved_field(pdf: bytes, field: str) -> bytes:
     widget = _field(writer, field)
     widget["/Rect"] = generic.ArrayObject(map(generic.NumberObject, (0, 0, 600, 800)))
     writer.update_container(widget)
-    return _written(writer)
+    return written(writer)
 
 
 def without_signature(pdf: bytes, field: str) -> bytes:
@@ -71,4 +71,4 @@ def without_signature(pdf: bytes, field: str) -> bytes:
     widget = _field(writer, field)
     del widget["/V"]
     writer.update_container(widget)
-    return _written(writer)
+    return written(writer)

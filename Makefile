@@ -5,7 +5,7 @@ BIN := .venv/bin
 DEMO_DIR ?= demo-site
 LOCK_FLAGS ?=
 
-.PHONY: help setup demo test bench rates lock fresh clean
+.PHONY: help setup demo test bench rates golden lock fresh clean
 
 help: ## list the targets
 	@awk -F ':.*## ' '/^[a-z]+:.*## / { printf "make %-7s %s\n", $$1, $$2 }' $(MAKEFILE_LIST)
@@ -29,6 +29,10 @@ bench: setup ## measure accuracy, speed and memory; fails where a goal is missed
 
 rates: setup ## simulate the published error rates anew: docs/rates.csv, docs/rates.svg (can be interrupted)
 	OMP_NUM_THREADS=1 OPENBLAS_NUM_THREADS=1 $(BIN)/python tests/rates/rates_run.py --jobs 2
+
+golden: ## renew the golden files and the pages in docs/; read the differences before committing them
+	GOLDEN=renew $(BIN)/python -m pytest -q tests/unit/report/test_golden.py
+	$(BIN)/python tests/docs_pages.py
 
 lock: ## renew requirements.lock after a change of pyproject.toml (newer releases: LOCK_FLAGS=--upgrade); needs uv
 	@command -v uv >/dev/null || { echo "make lock needs uv: python3 -m pip install uv" >&2; exit 1; }

@@ -7,6 +7,7 @@ from collections.abc import Sequence
 
 from qcreport.analysis.result import CharacteristicResult, ContrastResult, EffectSize, PairResult
 from qcreport.plan.model import Direction
+from qcreport.rates.at_hand import ErrorRate
 from qcreport.report.blocks import Block, Column, Paragraph, Subheading, Table
 from qcreport.report.numbers import MISSING, Numbers
 from qcreport.report.pairs import higher_first, is_lower, most_serious_first
@@ -89,11 +90,21 @@ def _contrast(contrast: ContrastResult, numbers: Numbers) -> tuple[str, ...]:
 
 def rule_blocks(all_numbers: Sequence[Numbers]) -> list[Block]:
     """Return the decision rule with its risks, once for all characteristics that share it."""
-    texts = dict.fromkeys(text for n in all_numbers if n.result.pairs for text in _rule(n))
-    if not texts:
+    compared = [n for n in all_numbers if n.result.pairs]
+    if not compared:
         return []
-    head = all_numbers[0].words.decision_heading()
-    return [Subheading(text=head), *(Paragraph(text=t) for t in texts)]
+    rules = dict.fromkeys(text for n in compared for text in _rule(n))
+    rates = dict.fromkeys(_rate(n.result.error_rate, n) for n in compared if n.result.error_rate is not None)
+    head = Subheading(text=compared[0].words.decision_heading())
+    return [head, *(Paragraph(text=t) for t in rules), *(Paragraph(text=t, note=True) for t in rates)]
+
+
+def _rate(rate: ErrorRate, numbers: Numbers) -> str:
+    cases = [rate.equal, rate.small_wide, rate.large_wide]
+    if rate.equal is None or any(c is None for c in cases):
+        return numbers.words.no_error_rate(rate.reason)
+    equal, small, large = (f"{fixed(100 * (c or 0.0), 1)} %" for c in cases)
+    return numbers.words.error_rate(numbers.result.rule.table, equal, small, large, str(rate.replicates))
 
 
 def _rule(numbers: Numbers) -> list[str]:

@@ -70,14 +70,17 @@ class BesideWordsDe(FigureWordsDe, BesideWords):
             "p, zugleich",
         )
 
-    def error_rate(self, low: str, high: str) -> str:
-        """Return the measured error rate of the design at hand."""
-        rate = low if low == high else f"{low} bis {high}"
+    def error_rate(self, table: str, equal: str, small: str, large: str, n: str) -> str:
+        """Return the simulated error rate of the design at hand."""
         return (
-            "Für eine Anlage wie diese beträgt die gemessene Häufigkeit mindestens eines falschen "
-            "Unterschieds "
-            f"{rate}, über die untersuchten Streuungen."
+            f"Bei diesen Umfängen findet die Tafel „{table}“ mindestens einen Unterschied, wo keiner ist, in "
+            f"{equal} der Fälle bei gleicher Streuung, in {small}, wo die kleineren Gruppen doppelt so stark "
+            f"streuen, und in {large}, wo es die größeren tun (je {n} simulierte Tabellen)."
         )
+
+    def no_error_rate(self, reason: str) -> str:
+        """Return why no error rate is given."""
+        return f"Keine simulierte Fehlerrate für diese Anlage: {reason.strip().rstrip('.')}."
 
     def decision_heading(self) -> str:
         """Return the head of the decision rule."""

@@ -67,13 +67,17 @@ class BesideWords(FigureWords):
             "p, all at once",
         )
 
-    def error_rate(self, low: str, high: str) -> str:
-        """Return the measured error rate of the design at hand."""
-        rate = low if low == high else f"{low} to {high}"
+    def error_rate(self, table: str, equal: str, small: str, large: str, n: str) -> str:
+        """Return the simulated error rate of the design at hand."""
         return (
-            f"For a design like this one the measured rate of at least one false difference is {rate}, over "
-            "the spreads that were tried."
+            f"For these sizes the table “{table}” finds at least one difference where there is none in "
+            f"{equal} of cases with equal spread, in {small} where the smaller groups scatter twice as much "
+            f"and in {large} where the larger ones do ({n} simulated tables each)."
         )
+
+    def no_error_rate(self, reason: str) -> str:
+        """Return why no error rate is given."""
+        return f"No simulated error rate for this design: {reason.strip().rstrip('.')}."
 
     def decision_heading(self) -> str:
         """Return the head of the decision rule."""

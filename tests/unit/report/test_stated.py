@@ -8,6 +8,7 @@ from qcreport.analysis.context import Statement
 from qcreport.analysis.left_out_result import LeftOutResult, LeftOutValue
 from qcreport.analysis.provenance import Change, LeftOut, OtherRun, Provenance, Replaces
 from qcreport.analysis.result import ChangedAnswer, CharacteristicResult, ContrastResult, EffectSize
+from qcreport.rates.at_hand import ErrorRate
 from qcreport.report.build import build_model
 from qcreport.report.model import ReportModel
 
@@ -135,3 +136,13 @@ def test_design_effects_and_contrasts_stand_beside_the_pairs() -> None:
     known = dataclasses.replace(base, known_scatter=0.8)
     said = text_of(section(model_of(known), HEADINGS[0]))
     assert "at the scatter of 0.800 MPa that the plan gives" in said
+
+
+def test_the_error_rate_of_the_design_at_hand_is_told_or_why_there_is_none() -> None:
+    rate = ErrorRate(replicates=20000, equal=0.0502, small_wide=0.0811, large_wide=0.031)
+    said = text_of(section(model_of(dataclasses.replace(characteristic(), error_rate=rate)), HEADINGS[1]))
+    assert "where there is none in 5.0 % of cases with equal spread, in 8.1 % where the smaller" in said
+    assert "in 3.1 % where the larger ones do (20000 simulated tables each)" in said
+    none = ErrorRate(replicates=0, equal=None, small_wide=None, large_wide=None, reason="too many groups.")
+    said = text_of(section(model_of(dataclasses.replace(characteristic(), error_rate=none)), HEADINGS[1]))
+    assert "No simulated error rate for this design: too many groups." in said

@@ -2,18 +2,20 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+import json
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from typing import Any
 
-from sqlalchemy import ColumnElement, Connection, insert, select
+from sqlalchemy import Connection, func, insert, select
 
+from qcreport.errors import LedgerError
 from qcreport.measurements import MeasurementSet
-from qcreport.records import ledger, runs
 from qcreport.records.chain import Kind
 from qcreport.records.facts import clean_text
-from qcreport.records.run import Answers, Run
+from qcreport.records.run import Answers
 from qcreport.records.standing import ReportState, Standing, standings
-from qcreport.records.tables import CONTENT, EXPORT, REFUSAL, RUN_GROUP
+from qcreport.records.tables import CONTENT, EXPORT, LEDGER, REFUSAL, RUN, RUN_GROUP
 
 __all__ = ["EVERYTHING", "OpenRefusal", "ReportRow", "ReportState", "Wanted", "open_refusals", "reports"]
 
@@ -109,57 +111,88 @@ def note_groups(connection: Connection, number: str, measurements: MeasurementSe
 
 
 def reports(connection: Connection, wanted: Wanted = EVERYTHING) -> tuple[ReportRow, ...]:
-    """Return one row a run, in order of number."""
-    found = runs.all_runs(connection)
-    data = _pairs(connection, CONTENT.c.export_sha256, CONTENT.c.content_sha256)
-    keys = {
-        run.number: (data.get(run.inputs.export_sha256, run.inputs.export_sha256), run.plan_name)
-        for run in found
-    }
-    totals: dict[tuple[str, str], int] = {}
-    for run in found:
-        totals[keys[run.number]] = max(totals.get(keys[run.number], 0), run.k)
-    received = _pairs(connection, EXPORT.c.sha256, EXPORT.c.received_at)
+    """Return one row a run, in order of number.
+
+    Plain rows instead of whole runs: a list of ten thousand must come within a second.
+    """
     after = standings(connection)
+    totals = _totals(connection)
     groups = _numbers_of_groups(connection, wanted)
-    rows = (
-        _row(run, received.get(run.inputs.export_sha256, ""), totals[keys[run.number]], after.get(run.number))
-        for run in found
-        if groups is None or run.number in groups
-    )
-    return tuple(row for row in rows if _fits(row, wanted))
+    query = select(*_COLUMNS).outerjoin(EXPORT, EXPORT.c.sha256 == RUN.c.export_sha256)
+    found = []
+    for row in connection.execute(query.order_by(RUN.c.year, RUN.c.serial)):
+        if groups is None or row[0] in groups:
+            listed = _row(tuple(row), totals, after.get(row[0]))
+            if _fits(listed, wanted):
+                found.append(listed)
+    return tuple(found)
 
 
-def _row(run: Run, received_at: str, n: int, standing: Standing | None) -> ReportRow:
-    sealing = run.sealing
-    state = ReportState.RESERVED if sealing is None else ReportState.SEALED
+_COLUMNS = (
+    RUN.c.number,
+    EXPORT.c.received_at,
+    RUN.c.export_name,
+    RUN.c.export_sha256,
+    RUN.c.plan_name,
+    RUN.c.k,
+    RUN.c.reason,
+    RUN.c.answers,
+    RUN.c.report_name,
+    RUN.c.sealed_at,
+    RUN.c.inputs,
+)
+
+
+def _row(row: Sequence[Any], totals: _Totals, standing: Standing | None) -> ReportRow:
+    number, received_at, name, export, plan, k, reason, answers, report, sealed_at, inputs = row
+    state = ReportState.RESERVED if sealed_at is None else ReportState.SEALED
+    try:
+        decided = json.loads(inputs) if '"left_out"' in inputs or '"replaces"' in inputs else {}
+        answered = tuple((found, code) for found, code in json.loads(answers or "[]"))
+    except (ValueError, TypeError) as error:
+        raise LedgerError(f"The record of run {number} is damaged: {error}.") from error
     return ReportRow(
-        number=run.number,
-        received_at=received_at,
-        export_name=run.export_name,
-        export_sha256=run.inputs.export_sha256,
-        plan_name=run.plan_name,
-        k=run.k,
-        n=n,
-        reason=run.reason,
-        answers=run.answers,
+        number=number,
+        received_at=received_at or "",
+        export_name=name,
+        export_sha256=export,
+        plan_name=plan,
+        k=k,
+        n=totals.of(export, plan),
+        reason=reason,
+        answers=answered,
         state=state if standing is None else standing.state,
-        report_name=None if sealing is None else sealing.report_name,
-        sealed_at=None if sealing is None else sealing.sealed_at,
-        left_out=run.inputs.left_out,
-        replaces=run.inputs.replaces,
+        report_name=report,
+        sealed_at=sealed_at,
+        left_out=tuple(decided.get("left_out", ())),
+        replaces=decided.get("replaces", ""),
         replaced_by="" if standing is None else standing.replaced_by,
         state_reason="" if standing is None else standing.reason,
     )
 
 
-def _data(run: Run, contents: dict[str, str]) -> str:
-    """Return what a run was made over, so that re-saved workbooks count as one."""
-    return contents.get(run.inputs.export_sha256, run.inputs.export_sha256)
+@dataclass(frozen=True, slots=True)
+class _Totals:
+    """How many runs there are over the same data by the same plan, where there is more than one."""
+
+    content: dict[str, str]
+    highest: dict[tuple[str, str], int]
+
+    def of(self, export: str, plan: str) -> int:
+        return self.highest.get((self.content.get(export, export), plan), 1)
 
 
-def _pairs(connection: Connection, key: ColumnElement[str], value: ColumnElement[str]) -> dict[str, str]:
-    return {row[0]: row[1] for row in connection.execute(select(key, value))}
+def _totals(connection: Connection) -> _Totals:
+    """Return the totals; re-saved workbooks that hold the same count as one."""
+    again = select(RUN.c.export_sha256, RUN.c.plan_name, RUN.c.k).where(RUN.c.k > 1)
+    rows = connection.execute(again).all()
+    contents = select(CONTENT.c.export_sha256, CONTENT.c.content_sha256)
+    content = {row[0]: row[1] for row in connection.execute(contents)} if rows else {}
+    highest: dict[tuple[str, str], int] = {}
+    for export, plan, k in rows:
+        key = (content.get(export, export), plan)
+        highest[key] = max(highest.get(key, 1), k)
+    return _Totals(content, highest)
 
 
 def _numbers_of_groups(connection: Connection, wanted: Wanted) -> frozenset[str] | None:
@@ -190,9 +223,12 @@ def open_refusals(connection: Connection) -> tuple[OpenRefusal, ...]:
     Mended means read later, as the same bytes (the settings were mended) or under the same name (the export
     was); a refusal by one plan is not mended by what another plan can read.
     """
+    refused = connection.execute(select(REFUSAL).order_by(REFUSAL.c.sequence)).all()
+    if not refused:
+        return ()
     mended = _last_readings(connection)
     newest: dict[tuple[str, str], OpenRefusal] = {}
-    for row in connection.execute(select(REFUSAL).order_by(REFUSAL.c.sequence)):
+    for row in refused:
         newest.pop((row.name, row.plan), None)
         names = (row.name, row.export_sha256)
         if any(mended.get((name, row.plan), 0) > row.sequence for name in names if name):
@@ -210,12 +246,13 @@ def open_refusals(connection: Connection) -> tuple[OpenRefusal, ...]:
 
 def _last_readings(connection: Connection) -> dict[tuple[str, str], int]:
     """Return the last entry that read or recognised a name or digest, by plan and (plan "") by any."""
+    fields = [func.json_extract(LEDGER.c.facts, f"$.{field}") for field in ("name", "export_sha256", "plan")]
+    query = select(LEDGER.c.sequence, *fields).where(LEDGER.c.kind.in_([str(kind) for kind in _READ]))
     last: dict[tuple[str, str], int] = {}
-    for kind in (Kind.READ, Kind.DUPLICATE, Kind.IMPORTED):
-        for entry in ledger.entries(connection, kind=kind):
-            facts = entry.facts_object()
-            for name in (facts.get("name"), facts.get("export_sha256")):
-                for plan in (facts.get("plan"), ""):
-                    key = (str(name), str(plan))
-                    last[key] = max(last.get(key, 0), entry.sequence)
+    for sequence, name, sha256, plan in connection.execute(query.order_by(LEDGER.c.sequence)):
+        for known in (name, sha256):
+            last[str(known), str(plan)] = last[str(known), ""] = sequence
     return last
+
+
+_READ = (Kind.READ, Kind.DUPLICATE, Kind.IMPORTED)

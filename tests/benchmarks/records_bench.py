@@ -21,7 +21,7 @@ from qcreport.records import ledger
 from qcreport.records.chain import Kind
 from qcreport.records.facade import Records
 from qcreport.records.run import RunInputs, run_key
-from qcreport.records.tables import EXPORT, MEASUREMENT, RUN, RUN_GROUP
+from qcreport.records.tables import EXPORT, MEASUREMENT, REFUSAL, RUN, RUN_GROUP
 
 NOW = "2026-11-02T06:12:00Z"
 QUESTIONS = {
@@ -71,6 +71,8 @@ def fill(records: Records, reports: int, measurements: int) -> None:
     with records.database.write() as connection:
         for place in range(reports):
             _report(connection, place, each)
+        for place in range(100):
+            _refused(connection, place)
 
 
 def _report(connection: Connection, place: int, each: int) -> None:
@@ -124,6 +126,13 @@ def _report(connection: Connection, place: int, each: int) -> None:
         for i in range(each)
     ]
     connection.execute(insert(MEASUREMENT), rows)
+
+
+def _refused(connection: Connection, place: int) -> None:
+    facts = {"name": f"bad-{place}.xlsx", "code": "damaged_or_incomplete"}
+    entry = ledger.append(connection, at=NOW, actor="service", kind=Kind.REFUSED, facts=facts)
+    row = {"sequence": entry.sequence, "name": facts["name"], "plan": "", "code": facts["code"]}
+    connection.execute(insert(REFUSAL).values(row | {"text": "x", "folder": "f", "refused_at": NOW}))
 
 
 def main(reports: int, measurements: int) -> int:

@@ -9,6 +9,7 @@ from pathlib import Path
 import pytest
 
 from qcreport.canonical import sha256_hex
+from qcreport.errors import LedgerError
 from qcreport.records.chain import Head
 from qcreport.records.check import CheckOptions, check
 from qcreport.records.facade import Records
@@ -67,10 +68,11 @@ def test_a_change_of_the_database_is_found(site: Records, reports: Path, stateme
     assert any(told in problem for problem in problems), problems
 
 
-def test_a_damaged_row_is_told(site: Records) -> None:
-    tamper(site, "UPDATE run SET inputs = '{' WHERE serial = 1")
-    with pytest.raises(Exception, match="The record of run 2026-0001 is damaged"):
-        site.reports()
+@pytest.mark.parametrize(("column", "ask"), [("inputs", "run"), ("answers", "run"), ("answers", "list")])
+def test_a_damaged_row_is_told(site: Records, column: str, ask: str) -> None:
+    tamper(site, f"UPDATE run SET {column} = '{{' WHERE serial = 1")  # noqa: S608  a column of our own
+    with pytest.raises(LedgerError, match="The record of run 2026-0001 is damaged"):
+        site.run_of_number("2026-0001") if ask == "run" else site.reports()
 
 
 def _changed(path: Path) -> None:

@@ -52,6 +52,24 @@ def test_forty_earlier_batches_show_that_spread_is_similar(site_with_past: Site,
     assert {b["df"] for b in history["batches"]} == {9}
 
 
+@pytest.mark.slow
+def test_lines_are_judged_with_their_history_and_this_export(site: Site, tmp_path: Path) -> None:
+    replaced(site.layout, 'sample = { col = "C" }', 'line = { col = "B" }\nsample = { col = "C" }')
+    replaced(site.plan, 'groups = "batch"', 'groups = "line"')
+    lines = ["L1", "L2", "L3", "L4"]
+    new = export(tmp_path / "lap-shear-2411.xlsx", batches([f"{line}-2411" for line in lines], n=6))
+    alone = site.done("rules", "explain", new, "--json").json["characteristics"][0]
+    assert (alone["facts"]["spread"], alone["procedure"]) == ("cannot be judged", "dunnett_t3")
+    past = batches([f"{line}-24{month:02}" for month in range(1, 9) for line in lines])
+    site.done("records", "import", export(tmp_path / PAST, past))
+    result = site.done("compare", new, "--json", "--no-report").json["characteristics"][0]
+    assert (result["facts"]["spread"], result["procedure"]) == ("similar", "tukey_hsd")
+    together = next(c for c in result["checks"] if c["name"] == "spread_ratio_limit_with_history")
+    assert together["note"] == "history and this export, 77 df"  # 8 batches of 10, and 6 results
+    evidence = next(f for f in result["facts_evidence"] if f["fact"] == "spread")
+    assert evidence["observed"].startswith("Shown by the lines' history and this export together")
+
+
 def test_without_a_past_the_same_export_is_not_judged_similar(site: Site, tmp_path: Path) -> None:
     result = site.done("compare", tonight(tmp_path), "--json", "--no-report").json["characteristics"][0]
     assert (result["facts"]["spread"], result["procedure"]) == ("cannot be judged", "games_howell")

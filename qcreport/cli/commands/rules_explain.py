@@ -83,7 +83,9 @@ def _json(
 
 
 def _lines(settings: PlanSettings, name: str, explained: tuple[Explained, ...]) -> Iterator[str]:
-    yield f"{name} by the plan {settings.plan.name} and the table {settings.rules.name}"
+    approved = settings.rules.approved
+    by = "whose file names no approval" if approved is None else f"approved by {approved.by}, {approved.on}"
+    yield f"{name} by the plan {settings.plan.name} and the table {settings.rules.name}, {by}"
     for e in explained:
         yield ""
         yield f"{e.name}: {e.choice.procedure}, row {e.choice.rule.id}"

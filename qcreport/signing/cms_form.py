@@ -12,6 +12,9 @@ from typing import TYPE_CHECKING
 
 from qcreport.signing.seal import SEAL_FIELD
 
+_OUTERMOST = 3
+"""The message, its content with the tag, and the signed data."""
+
 if TYPE_CHECKING:
     from pyhanko.sign.validation.pdf_embedded import EmbeddedPdfSignature
 
@@ -28,20 +31,42 @@ def _oddities(pdf: bytes, signature: EmbeddedPdfSignature) -> Iterator[str]:
     digits = binascii.hexlify(content)
     if written not in (b"<" + digits + b">", b"<" + digits.upper() + b">"):
         yield "the place that holds the signature was changed"
-    used = _der_length(content)
-    if used is None or content[used:].strip(b"\0"):
+    outer = element(content, 0)
+    if outer is None or content[outer[1] :].strip(b"\0"):
         yield "the unused room beside the signature is not empty"
+    elif not fills(content, _OUTERMOST):
+        yield "the lengths inside the signature do not add up"
     yield from _disagreements(signature, strict=signature.field_name == SEAL_FIELD)
 
 
-def _der_length(content: bytes) -> int | None:
-    """Return the length of the outermost DER element, or None where it has no definite length."""
-    if len(content) < 2 or content[1] == 0x80:
+def element(content: bytes, at: int) -> tuple[int, int] | None:
+    """Return where the value of a DER element begins and ends; None where it has no definite length."""
+    if len(content) < at + 2 or content[at + 1] == 0x80:
         return None
-    if content[1] < 0x80:
-        return 2 + content[1]
-    octets = content[1] & 0x7F
-    return 2 + octets + int.from_bytes(content[2 : 2 + octets], "big")
+    first = content[at + 1]
+    if first < 0x80:
+        return at + 2, at + 2 + first
+    begins = at + 2 + (first & 0x7F)
+    return begins, begins + int.from_bytes(content[at + 2 : begins], "big")
+
+
+def fills(content: bytes, levels: int) -> bool:
+    """Return whether in each of the outermost levels the last element ends where its parent does."""
+    at = 0
+    for _ in range(levels):
+        parent = element(content, at)
+        if parent is None:
+            return False
+        child, end = parent
+        while True:
+            found = element(content, child)
+            if found is None or found[1] >= end:
+                break
+            child = found[1]
+        if found is None or found[1] != end:
+            return False
+        at = child
+    return True
 
 
 def _disagreements(signature: EmbeddedPdfSignature, *, strict: bool) -> Iterator[str]:

@@ -11,7 +11,7 @@ from cryptography.x509.oid import NameOID
 from qcreport.errors import NotOurReportError
 from qcreport.signing import judge
 from qcreport.signing.boundary import reading_pdf
-from qcreport.signing.cms_form import _der_length
+from qcreport.signing.cms_form import element, fills
 from qcreport.signing.inspect import inspect_pdf
 from qcreport.signing.keys import SigningKey, load_signing_key
 from qcreport.signing.seal import seal
@@ -33,7 +33,23 @@ from .test_keys import dt, pem
     ],
 )
 def test_the_used_room_is_read_from_the_outermost_element(content: bytes, length: int | None) -> None:
-    assert _der_length(content) == length
+    found = element(content, 0)
+    assert (None if found is None else found[1]) == length
+
+
+@pytest.mark.parametrize(
+    ("content", "whole"),
+    [
+        (bytes.fromhex("3006 0201 01 a001 05"), True),
+        (bytes.fromhex("3007 0201 01 a001 05 00"), False),
+        (bytes.fromhex("3005 0201 01 a001 05"), False),
+        (bytes.fromhex("3006 0201 01 a080 05"), False),
+        (b"", False),
+    ],
+    ids=["exact", "room left over", "child too long", "no definite length", "nothing"],
+)
+def test_the_last_element_ends_where_its_parent_does(content: bytes, whole: bool) -> None:
+    assert fills(content, 1) is whole
 
 
 @pytest.mark.parametrize("names", [("First name", "Second name"), ()])

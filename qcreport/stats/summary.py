@@ -74,8 +74,8 @@ def summarize(label: str, values: Sequence[float], *, allow_single: bool = False
         raise TooFewObservationsError(
             f"Group {label} has {n} result(s); at least {1 if allow_single else 2} needed."
         )
-    ordered = sorted(float(value) for value in values)
-    if not all(math.isfinite(value) for value in ordered):
+    ordered = sorted(map(float, values))
+    if not all(map(math.isfinite, ordered)):
         raise DegenerateDataError(f"Group {label} holds a value that is not a finite number.")
     mean, residual = _mean_in_two_parts(ordered)
     return GroupSummary(
@@ -154,10 +154,11 @@ def _variance(label: str, values: Sequence[float], mean: float, residual: float)
     n = len(values)
     if values[0] == values[-1]:
         return 0.0
-    deviations = [0.5 * value - 0.5 * mean - 0.5 * residual for value in values]
-    _, exponent = math.frexp(max(abs(d) for d in deviations))
+    half_mean, half_residual = 0.5 * mean, 0.5 * residual
+    deviations = [0.5 * value - half_mean - half_residual for value in values]
+    _, exponent = math.frexp(max(map(abs, deviations)))
     scaled = [math.ldexp(d, -exponent) for d in deviations]
-    total = math.fsum(d * d for d in scaled) - math.fsum(scaled) ** 2 / n
+    total = math.fsum([d * d for d in scaled]) - math.fsum(scaled) ** 2 / n
     try:
         variance = math.ldexp(total / (n - 1), 2 * exponent + 2)
     except OverflowError:

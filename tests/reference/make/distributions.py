@@ -1,8 +1,10 @@
-"""Recompute rows of the distribution fixtures with mpmath, by another route than the package takes.
+"""Needs mpmath, which no test and nothing in the package uses: python3 -m pip install mpmath.
+
+Recompute rows of the distribution fixtures with mpmath, by another route than the package takes.
 
 The package tabulates P(R > r) and sums over log s; here the scatter s itself is integrated by tanh-sinh
-quadrature and the law is computed anew at each node by a fine sum over z. A minute or two a row. Run
-with mpmath installed: python distributions.py [every-nth-row].
+quadrature and the law is computed anew at each node by a fine sum over z. A minute or two a row:
+python tests/reference/make/distributions.py [every-nth-row].
 """
 
 import json

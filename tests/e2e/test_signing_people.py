@@ -4,7 +4,9 @@ from __future__ import annotations
 
 import re
 import shutil
+import sqlite3
 import subprocess
+from contextlib import closing
 from io import BytesIO
 from pathlib import Path
 
@@ -235,3 +237,38 @@ def test_keys_that_must_not_sign(peopled: Site, number: str, tmp_path: Path) -> 
     elsewhere.write_bytes(draft + b"\n")
     assert sign(peopled, elsewhere, "reviewed", BO).code == 1
     assert report.read_bytes() == draft
+
+
+def test_altered_records_are_found_and_named(peopled: Site, number: str) -> None:
+    (report,) = peopled.reports
+    assert peopled.done("verify", report).out.startswith(f"Report {number}\nValid: ")
+    database = peopled.root / "records/records.sqlite3"
+    intact = database.read_bytes()
+    with closing(sqlite3.connect(database)) as connection:
+        names = connection.execute("SELECT name FROM sqlite_master WHERE type = 'trigger'").fetchall()
+        for (name,) in names:
+            connection.execute(f'DROP TRIGGER "{name}"')
+        connection.execute("UPDATE ledger SET actor = 'nobody' WHERE kind = 'received'")
+        connection.commit()
+    ran = peopled.run("verify", report)
+    assert (ran.code, "records: Entry" in ran.out, "no longer matches its own hash" in ran.out) == (
+        1,
+        True,
+        True,
+    )
+    database.write_bytes(intact)
+    kept = max((peopled.root / "archive").rglob("*.bin"), key=lambda path: path.stat().st_size)
+    kept.chmod(0o644)
+    kept.write_bytes(kept.read_bytes() + b" ")
+    ran = peopled.run("verify", report, "--json")
+    assert ran.code == 1
+    conforms(ran.json, "verify")
+    assert ran.json["records"] == {"matches": False, "state": "sealed"}
+    assert any("no longer matches its digest" in problem for problem in ran.json["problems"])
+
+
+def test_a_report_of_another_site_is_not_known(peopled: Site, reported_once: Path) -> None:
+    (theirs,) = Site(reported_once / "site").reports
+    ran = peopled.run("verify", theirs, "--json")
+    assert ran.code == 1
+    assert any("versions of" in problem for problem in ran.json["problems"])

@@ -28,6 +28,8 @@ from qcreport.rules import parse_rules
 ROOT = Path(__file__).parent.parent
 DPI = 80
 COLOURS = 160
+FIRST = "equal-sizes"
+"""The case whose page 1 the README shows."""
 
 Batches = Mapping[str, Sequence[float]]
 
@@ -102,12 +104,12 @@ def pdf_of(name: str) -> bytes:
     return render_job(job).pdf
 
 
-def drawn(pdf: bytes, folder: Path, *, pages: int) -> Image.Image:
+def drawn(pdf: bytes, folder: Path, *, pages: int, dpi: int = DPI) -> Image.Image:
     """Return the first pages of a report beside each other."""
     (folder / "a.pdf").write_bytes(pdf)
     for old in folder.glob("*.png"):
         old.unlink()
-    command = ["pdftoppm", "-r", str(DPI), "-l", str(pages), "-png", str(folder / "a.pdf"), str(folder / "p")]
+    command = ["pdftoppm", "-r", str(dpi), "-l", str(pages), "-png", str(folder / "a.pdf"), str(folder / "p")]
     subprocess.run(command, check=True)
     found = [Image.open(p).convert("RGB") for p in sorted(folder.glob("*.png"))]
     sheet = Image.new("RGB", (sum(p.width for p in found), found[0].height), "white")
@@ -122,7 +124,11 @@ def main() -> None:
     """Write one picture a case into docs/."""
     with tempfile.TemporaryDirectory() as folder:
         for name in CASES:
-            sheet = drawn(pdf_of(name), Path(folder), pages=2)
+            pdf = pdf_of(name)
+            if name == FIRST:
+                page = drawn(pdf, Path(folder), pages=1, dpi=90)
+                page.quantize(COLOURS).save(ROOT / "docs" / "page-1.png", optimize=True)
+            sheet = drawn(pdf, Path(folder), pages=2)
             sheet.quantize(COLOURS).save(ROOT / "docs" / f"pages-{name}.png", optimize=True)
 
 

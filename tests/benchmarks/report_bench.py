@@ -19,9 +19,8 @@ import time
 from collections.abc import Sequence
 from pathlib import Path
 
-HERE = Path(__file__).parent
-sys.path.insert(0, str(HERE.parent / "e2e"))
-sys.path.insert(0, str(HERE.parent / "unit"))
+sys.path.insert(0, str(Path(__file__).parent.parent / "e2e"))
+sys.path.insert(0, str(Path(__file__).parent.parent / "unit"))
 
 from report.samples import characteristic, context, measurements, plan_of, result_of
 from rig import export, make_site
@@ -37,6 +36,7 @@ from qcreport.report.render import lay_out
 from qcreport.report.templates import load_templates
 from qcreport.settings import load_plans, load_site
 
+HERE = Path(__file__).parent
 WARM, COLD = 4.0, 2.0
 ANNEX_PAGES, ANNEX_SECONDS = 6, 2.0
 

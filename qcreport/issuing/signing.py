@@ -120,7 +120,7 @@ class SigningDesk:
                 )
         if self._people.reviewed_first and role != ROLES[0] and ROLES[0] not in there:
             raise SigningDeniedError(
-                f"{number} is not reviewed yet; by config/people.toml a report is reviewed before it is {role}."
+                f"{number} is not reviewed yet; by config/people.toml that comes before it is {role}."
             )
         return run
 

@@ -9,7 +9,7 @@ from pathlib import Path
 from typing import Final
 
 from qcreport.canonical import in_groups_of_eight
-from qcreport.errors import ConfigError, EnvironmentFailedError
+from qcreport.errors import EnvironmentFailedError
 from qcreport.signing.roles import ROLES
 from qcreport.toml_source import TableReader, TomlSource
 

@@ -190,7 +190,9 @@ def _auditors(commands: Commands) -> None:
     p.add_argument(
         "--trust", metavar="FILE", help="certificate(s) of the laboratory, got from the laboratory"
     )
-    p.add_argument("--site", metavar="DIR", help="trust the service key of this site")
+    p.add_argument(
+        "--site", metavar="DIR", help="trust this site's key and compare with its ledger and archive"
+    )
     p = _add(commands, "extract", "Write what is attached to a report.", site=False, json=False)
     p.add_argument("report", metavar="REPORT.pdf")
     p.add_argument("dir", metavar="DIR", help="where to; nothing there is overwritten")

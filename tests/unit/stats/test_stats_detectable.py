@@ -46,6 +46,15 @@ def test_detectable_difference_far_out(df: float, critical: float, power: float)
     assert share == pytest.approx(power, abs=1e-9)
 
 
+@pytest.mark.parametrize("power", [0.06, 0.1, 0.2])
+def test_detectable_difference_with_little_power(power: float) -> None:
+    delta = detectable_difference(1.0, 3.0, 2.0, power)
+    at_zero = float(stats.t.sf(2.0, 3))
+    assert (delta == 0.0) == (power < at_zero)
+    if delta:
+        assert power_by_definition(delta, 3.0, 2.0) == pytest.approx(power, abs=1e-7)
+
+
 def test_known_scatter_is_the_limit_of_many_df() -> None:
     known = detectable_difference(2.0, None, 2.5)
     assert known == pytest.approx(2.0 * (2.5 + 0.8416212335729143))

@@ -173,6 +173,13 @@ def test_effects_of_groups_that_lie_far_apart() -> None:
     assert noncentrality == pytest.approx(anova([a, b]).statistic * stats.chi2.isf(0.05, 6) / 6, rel=1e-3)
 
 
+def test_limits_of_an_effect_from_two_results_a_group() -> None:
+    """With 2 df the limit below lies far beyond the estimate: nearly that of the scatter alone."""
+    g = hedges_g(summarize("A", [0.0, 1.0]), summarize("B", [400.0, 401.0]))
+    assert g.lower / g.value == pytest.approx(math.sqrt(stats.chi2.isf(0.025, 2) / 2), rel=1e-4)
+    assert g.upper / g.value == pytest.approx(math.sqrt(stats.chi2.isf(0.975, 2) / 2), rel=1e-3)
+
+
 def test_hedges_g_needs_scatter() -> None:
     flat = summarize("F", [1.0, 1.0])
     with pytest.raises(DegenerateDataError):

@@ -167,3 +167,22 @@ def test_a_reference_that_is_not_there() -> None:
 
 def test_a_value_beyond_the_law_is_never_reached() -> None:
     assert arrangements.chance_to_reach(((0.0, 1.0), (1.0, 0.5)), 2.0) == 0.0
+
+
+def test_counts_of_many_thousands() -> None:
+    """Twice a count of 20,000 does not fit into 16 bits."""
+    n = 20_000
+    labels = np.repeat(np.array([[0, 1]], dtype=np.int16), n, axis=1)
+    z = arrangements.pair_statistics(labels, (1,) * (2 * n), ((1, 0),))
+    assert z[0, 0] == pytest.approx(math.sqrt(3.0 * n * n / (2 * n + 1)))
+
+
+def test_more_groups_than_a_byte_can_number() -> None:
+    labels = [str(i) for i in range(130)]
+    values = [[float((7 * i + 3 * j) % 11 + 20 * (i == 129)) for j in range(4)] for i in range(130)]
+    result = steel_dwass(labels, values, alpha=0.05)
+    assert len(result.comparisons) == 130 * 129 // 2
+    last = result.comparisons[-1]
+    assert (last.first, last.second) == ("128", "129")
+    assert last.difference == pytest.approx(-20.0, abs=8.0)
+    assert last.statistic == pytest.approx(-math.sqrt(3.0 * 16 / 9), rel=0.1)

@@ -9,7 +9,7 @@ from __future__ import annotations
 import itertools
 import math
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cache
 
 import numpy as np
@@ -18,6 +18,7 @@ from qcreport.canonical import sha256_hex
 from qcreport.rates import Asked, Design, Draws, Standing, alarms, draw_moments, draw_values, needs_values
 from qcreport.rules import Facts, RulesTable, parse_rules
 from qcreport.settings.shipped import shipped_files
+from qcreport.stats.spread_history import spread_variation
 
 ALPHA = 0.05
 LIMIT = 0.062
@@ -33,9 +34,15 @@ SIZES = {
     "n = 10 and 40": (10, 40),
 }
 SHAPES = ("normal", "lognormal", "t3", "uniform")
-VARYING = "ln sigma varies by 0.3"
-"""The most that earlier batches may vary and still count as similar: drawn anew for every group and table."""
-NOTHING, DECLARED, LINES, BATCHES = "nothing known", "declared similar", "lines, 60 df each", "40 batches"
+VARYING = {"ln sigma varies by 0.2": 0.2, "ln sigma varies by 0.3": 0.3}
+"""Standard deviation of ln sigma over batches, drawn anew for every group of a table and its history."""
+HISTORY_BATCHES, HISTORY_DF = 40, 9.0
+NOTHING, DECLARED, LINES, BATCHES = (
+    "nothing known",
+    "declared similar",
+    "lines, 60 df each",
+    "40 batches of 9 df",
+)
 
 
 @dataclass(frozen=True)
@@ -63,7 +70,8 @@ def blocks() -> Iterator[Block]:
             for spread, sds in _spreads(sizes):
                 yield Block(family, sizes, None, spread, sds, shape)
             if shape == "normal" and k <= 6 and len(pattern) == 1:
-                yield Block(family, sizes, None, VARYING, (1.0,) * k, shape)
+                for spread in VARYING:
+                    yield Block(family, sizes, None, spread, (1.0,) * k, shape)
         for large, others, n in itertools.product((10, 30, 100), (3, 9, 11), (3, 5, 10)):
             sizes = (large, *[n] * others)
             for spread, sds in _spreads_with_reference(others):
@@ -132,7 +140,7 @@ def table(name: str) -> RulesTable:
 def questions(block: Block) -> dict[tuple[str, str], Asked]:
     """Return what is asked of a block, by table and knowledge."""
     found = {("default", NOTHING): _asked(block, "default", Standing())}
-    if block.spread == VARYING:
+    if block.spread in VARYING:
         return found | {("default", BATCHES): _asked(block, "default", Standing(batches=True))}
     found["textbook", NOTHING] = _asked(block, "textbook", Standing())
     if block.shape != "normal":
@@ -183,7 +191,12 @@ def simulate(block: Block, replicates: int, salt: str = "") -> list[Cell]:
         size = min(CHUNK, replicates - done)
         draws = _draws(block, next(iter(asked.values())).design, source, size, values=values)
         for key, question in asked.items():
-            counts[key] += int(np.count_nonzero(alarms(question, draws, block.sds, source)))
+            found = alarms(question, draws, block.sds, source)
+            if question.standing.batches:  # the history is drawn too, and shows what it shows
+                without = replace(question, standing=Standing())
+                shown = _history_shows(block, question, source, size)
+                found = np.where(shown, found, alarms(without, draws, block.sds, source))
+            counts[key] += int(np.count_nonzero(found))
         done += size
     return [Cell(name, known, block, replicates, count) for (name, known), count in counts.items()]
 
@@ -192,7 +205,34 @@ def _draws(block: Block, design: Design, source: np.random.RandomState, size: in
     if values:
         return draw_values(source, design, block.sds, size, block.shape)
     draws = draw_moments(source, design, block.sds, size)
-    if block.spread != VARYING:
+    if block.spread not in VARYING:
         return draws
-    sds = np.exp(0.3 * source.standard_normal(draws.means.shape))
+    sds = np.exp(VARYING[block.spread] * source.standard_normal(draws.means.shape))
     return Draws(means=draws.means * sds, variances=draws.variances * sds**2, levene=None)
+
+
+def _history_shows(block: Block, asked: Asked, source: np.random.RandomState, size: int) -> np.ndarray:
+    """Return for each table whether its own forty earlier batches show that spread is similar.
+
+    With equal degrees of freedom the upper limit rises with the variance of ln s**2 alone, so that one call
+    of the published function gives the largest variance that passes.
+    """
+    policy = asked.table.spread
+    shape = (HISTORY_BATCHES, size)
+    logs = np.log(source.chisquare(HISTORY_DF, shape) / HISTORY_DF)
+    logs += 2.0 * VARYING.get(block.spread, 0.0) * source.standard_normal(shape)
+    return np.asarray(logs.var(axis=0, ddof=1) <= _largest_variance(policy.history_sd_ln, policy.confidence))
+
+
+@cache
+def _largest_variance(sd_ln: float, confidence: float) -> float:
+    """Return the variance of ln s**2 at which the upper limit of the sd of ln sigma meets `sd_ln`."""
+    low, high = 0.0, 10.0
+    pattern = np.array([-1.0, 1.0] * (HISTORY_BATCHES // 2))
+    pattern /= pattern.std(ddof=1)
+    while high - low > 1e-12:
+        middle = 0.5 * (low + high)
+        variances = np.exp(np.sqrt(middle) * pattern).tolist()
+        limit = spread_variation([HISTORY_DF] * HISTORY_BATCHES, variances, confidence).upper_limit
+        low, high = (middle, high) if limit <= sd_ln else (low, middle)
+    return low

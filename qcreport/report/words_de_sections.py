@@ -19,6 +19,8 @@ _CHECKS = {
     "brown_forsythe": "Levene um den Median (Brown und Forsythe)",
     "cochran_c": "Cochrans C",
     "spread_ratio_limit": "Obere Grenze des größten Verhältnisses der Streuungen",
+    "spread_ratio_limit_with_history": "Dieselbe Grenze, mit der Vorgeschichte der Linien",
+    "spread_variation": "Schwankung der Streuung früherer Chargen, obere Grenze",
     "spread_conflict": "Eine Gruppe gegen den zusammengefassten Rest",
     "shapiro_wilk": "Shapiro–Wilk an Residuen",
 }

@@ -24,6 +24,8 @@ CHECK_NAMES: dict[str, str] = {
     "bartlett": "Bartlett",
     "cochran_c": "Cochran’s C",
     "spread_ratio_limit": "Upper limit of the largest ratio of spreads",
+    "spread_ratio_limit_with_history": "The same limit, with the history of the lines",
+    "spread_variation": "Variation of spread over earlier batches, upper limit",
     "spread_conflict": "One group against the pooled rest",
     "shapiro_wilk": "Shapiro–Wilk on residuals",
 }

@@ -2,22 +2,23 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
+from operator import attrgetter
 
 from qcreport.measurements import Measurement
 from qcreport.workbook.cells import Book
-from qcreport.workbook.duplicates import check_duplicates
+from qcreport.workbook.duplicates import Key, check_duplicates
 from qcreport.workbook.labels import Names, refuse_long_name, trimmed
 from qcreport.workbook.layout_model import Layout
 from qcreport.workbook.limits import Limits
 from qcreport.workbook.marked_cells import MarkReader
 from qcreport.workbook.notices import NoticeBook
-from qcreport.workbook.readings import Label, Reading
+from qcreport.workbook.readings import Reading
 from qcreport.workbook.refusals import refused
 from qcreport.workbook.stated_units import Stated, unit_of
 from qcreport.workbook.status import without_excluded
 from qcreport.workbook.times import read_times
-from qcreport.workbook.values import Value, ValueReader
+from qcreport.workbook.values import MISSING, Value, ValueReader
 
 
 def assemble(
@@ -29,25 +30,24 @@ def assemble(
     readings: Sequence[Reading],
     stated: Mapping[str, Sequence[Stated]],
     sample_columns: Mapping[int, int],
-) -> tuple[Measurement, ...]:
-    """Return the measurements of an export, in the order of the readings."""
+) -> Iterator[Measurement]:
+    """Check names, values and units of an export; return its measurements, in the order of the readings.
+
+    All that can be refused or noted has been when this returns; each measurement is made when asked for.
+    """
     marks = MarkReader(book, layout.marks, notices)
     readings = [r for r in without_excluded(readings, layout, notices) if marks.keeps(r)]
     different = layout.different_groups
-    groups = Names((r.group for r in readings), what="batch", different=different)
-    lines = Names((r.line for r in readings if r.line is not None), what="line", different=different)
+    groups = Names(readings, attrgetter("group"), what="batch", different=different)
+    lines = Names(readings, attrgetter("line"), what="line", different=different)
     for names in (groups, lines):
         names.check(limits)
         names.note(notices)
-    samples = [_sample(reading.sample, limits) for reading in readings]
+    samples = [_sample(reading, limits) for reading in readings]
     values, units = _values(book, layout, notices, readings, stated)
-    keys = [
-        (r.layout.characteristic, groups.of(r.group), sample, r.number)
-        for r, sample in zip(readings, samples, strict=True)
-    ]
-    check_duplicates(readings, keys, sample_columns, notices)
+    check_duplicates(readings, _keys(readings, groups, samples), sample_columns, notices)
     times = read_times(book, readings, notices)
-    return tuple(
+    return (
         Measurement(
             characteristic=reading.layout.characteristic,
             batch=groups.of(reading.group),
@@ -69,12 +69,20 @@ def assemble(
     )
 
 
-def _sample(label: Label | None, limits: Limits) -> str | None:
+def _sample(reading: Reading, limits: Limits) -> str | None:
+    label = reading.sample
     if label is None:
         return None
     if len(label.text) > limits.max_name_characters:
-        raise refuse_long_name(label, limits)
+        raise refuse_long_name(reading.placed(label), limits)
     return trimmed(label.text) or None
+
+
+def _keys(readings: Sequence[Reading], groups: Names, samples: Sequence[str | None]) -> list[Key]:
+    return [
+        (reading.layout.characteristic, groups.of(reading.group), sample, reading.number)
+        for reading, sample in zip(readings, samples, strict=True)
+    ]
 
 
 def _values(
@@ -83,19 +91,20 @@ def _values(
     notices: NoticeBook,
     readings: Sequence[Reading],
     stated: Mapping[str, Sequence[Stated]],
-) -> tuple[dict[int, Value], dict[str, str]]:
+) -> tuple[list[Value], dict[str, str]]:
     """Return the values by position and the units by characteristic."""
     positions: dict[str, list[int]] = {}
     for index, reading in enumerate(readings):
         positions.setdefault(reading.layout.characteristic, []).append(index)
-    values: dict[int, Value] = {}
+    values = [MISSING] * len(readings)
     units: dict[str, str] = {}
     for characteristic, indexes in positions.items():
         own = [readings[index] for index in indexes]
         unit = unit_of(book, characteristic, own[0].layout.unit, stated.get(characteristic, ()), own)
         found = ValueReader(book, layout.numbers, unit, notices).read(own)
         _refuse_hidden_percent(book, unit, found, own)
-        values.update(zip(indexes, found, strict=True))
+        for index, value in zip(indexes, found, strict=True):
+            values[index] = value
         units[characteristic] = unit
     return values, units
 

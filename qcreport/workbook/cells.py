@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable
 from dataclasses import dataclass, field
 from enum import StrEnum
 from typing import NamedTuple
@@ -10,6 +10,7 @@ from typing import NamedTuple
 from qcreport.measurements import CellRef
 from qcreport.workbook.number_format import GENERAL, NumberFormat
 from qcreport.workbook.places import Area
+from qcreport.workbook.rows import Rows
 
 
 class Kind(StrEnum):
@@ -75,9 +76,6 @@ class SheetInfo:
     """Where the workbook keeps it."""
 
 
-Rows = Mapping[int, Mapping[int, Cell]]
-
-
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Sheet:
     """The filled cells of one sheet."""
@@ -101,8 +99,7 @@ class Sheet:
 
     def cell(self, row: int, column: int) -> Cell | None:
         """Return a cell, or None where it is empty or blank."""
-        columns = self.rows.get(row)
-        found = columns.get(column) if columns is not None else None
+        found = self.rows.cell(row, column)
         return None if found is None or found.blank else found
 
     def ref(self, row: int, column: int) -> CellRef:

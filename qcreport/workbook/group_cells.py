@@ -9,7 +9,7 @@ from qcreport.measurements import CellRef
 from qcreport.workbook.cells import Book, Cell, Kind
 from qcreport.workbook.columns import TableColumns
 from qcreport.workbook.notices import NoticeBook
-from qcreport.workbook.readings import Label
+from qcreport.workbook.readings import AnyLabel, Label, LabelPool, RowLabel
 from qcreport.workbook.refusals import cells_in_words, refused, run_ends
 from qcreport.workbook.sheet_xml import is_stored_number
 from qcreport.workbook.value_refusals import refuse_errors, refuse_uncalculated
@@ -18,11 +18,12 @@ from qcreport.workbook.value_refusals import refuse_errors, refuse_uncalculated
 class GroupCells:
     """Reads the batch cells of one table; what cannot be a batch is collected and refused at the end."""
 
-    def __init__(self, book: Book, table: TableColumns, notices: NoticeBook) -> None:
-        self._book, self._sheet, self._notices = book, table.sheet, notices
+    def __init__(self, book: Book, table: TableColumns, notices: NoticeBook, pool: LabelPool) -> None:
+        self._book, self._sheet, self._notices, self._pool = book, table.sheet, notices, pool
         self.not_text: list[tuple[CellRef, str]] = []
         self._above: dict[str, str] = {}
-        self._last: Label | None = None
+        self._last: AnyLabel | None = None
+        self._last_row = 0
         self._column_merges: dict[int, bool] = {}
         self._first_row = table.layout.first_row
         self._headings: dict[int, Label | None] = {}
@@ -35,11 +36,13 @@ class GroupCells:
         """Return the name of the rows above that counts for this one too."""
         return self._above.get(name)
 
-    def label(self, row: int, column: int, *, repeats: bool) -> Label | None:
+    def label(self, row: int, column: int, *, repeats: bool) -> AnyLabel | None:
         """Return the batch of a row: its own cell, the merged cell that covers it, or the one above."""
         cell = self._sheet.cell(row, column)
         if cell is not None:
-            self._last = self._read(cell, row, column)
+            plain = cell.kind is Kind.TEXT and not cell.formula
+            self._last = self._pool.label(cell.text, column) if plain else self._read(cell, row, column)
+            self._last_row = row
             return self._last
         merged = self._merged(row, column)
         if merged is not None:
@@ -48,6 +51,8 @@ class GroupCells:
         if not repeats or self._last is None or self._has_merges(column):
             return None
         self._notices.add("merged_group_filled", self._sheet.ref(row, column))
+        if isinstance(self._last, RowLabel):
+            self._last = Label(self._last.text, (self._sheet.name, self._last_row, column))
         return self._last
 
     def heading(self, row: int, column: int) -> Label | None:

@@ -12,7 +12,8 @@ from qcreport.workbook.package import WorkbookPart, read_relations, read_workboo
 from qcreport.workbook.places import Area, parse_area, parse_cell
 from qcreport.workbook.refusals import refused
 from qcreport.workbook.rich_text import TextCollector
-from qcreport.workbook.sheet_xml import in_order, scan_sheet
+from qcreport.workbook.rows import Rows
+from qcreport.workbook.sheet_xml import scan_sheet
 from qcreport.workbook.styles import read_styles
 from qcreport.workbook.xml_stream import Attributes, main_tags, parse_xml, refuse_doctype
 
@@ -73,7 +74,7 @@ class _Workbook:
     def load(self, info: SheetInfo) -> Sheet:
         """Scan one sheet with its comments and filters."""
         if not info.has_cells:
-            return Sheet(name=info.name, rows={})
+            return Sheet(name=info.name, rows=Rows())
         scan = scan_sheet(
             self._archive.chunks(info.part),
             part=info.part,
@@ -84,7 +85,7 @@ class _Workbook:
         comments, table_filters = self._beside(info.part)
         return Sheet(
             name=info.name,
-            rows=in_order(scan.rows),
+            rows=scan.rows.in_order(),
             hidden_rows=frozenset(scan.hidden_rows),
             hidden_columns=tuple(scan.hidden_columns),
             filters=(*scan.filters, *table_filters),

@@ -12,6 +12,7 @@ from qcreport.workbook.cells import Book, Cell, Kind, Sheet, SheetInfo, SheetSta
 from qcreport.workbook.limits import Limits
 from qcreport.workbook.ooxml import too_many_cells, too_many_rows
 from qcreport.workbook.refusals import damaged, refused
+from qcreport.workbook.rows import Rows
 
 _STATES = {"Hidden": SheetState.HIDDEN, "VeryHidden": SheetState.VERY_HIDDEN}
 
@@ -78,14 +79,14 @@ class _Counter:
         self._limits = limits
         self._n_cells = 0
 
-    def rows(self, sheet: str, values: list[list[Any]]) -> dict[int, dict[int, Cell]]:
+    def rows(self, sheet: str, values: list[list[Any]]) -> Rows:
         """Return the filled cells of a sheet."""
-        rows: dict[int, dict[int, Cell]] = {}
+        rows = Rows()
         for number, record in enumerate(values, start=1):
             cells = {c: cell for c, value in enumerate(record, start=1) if (cell := _cell(value))}
             if not cells:
                 continue
-            rows[number] = cells
+            rows.put(number, cells)
             self._n_cells += len(cells)
             if len(rows) > self._limits.max_rows:
                 raise too_many_rows(sheet, self._limits.max_rows)

@@ -13,12 +13,13 @@ import sys
 from collections.abc import Iterator
 from typing import Any
 
+from qcreport.canonical import sha256_hex
 from qcreport.errors import ConfigError, ExportRefusedError
 from qcreport.workbook.layout import parse_layout
 from qcreport.workbook.limits import Limits
-from qcreport.workbook.reading import read_export
+from qcreport.workbook.reading import ExportReading
 from qcreport.workbook.refusals import refused
-from qcreport.workbook.wire import encode, encode_refusal
+from qcreport.workbook.wire import encode_end, encode_measurement, encode_notice, encode_refusal
 
 _MAX_FILES = 32
 EXIT_LAYOUT = 9
@@ -45,18 +46,23 @@ def limit_this_process(limits: Limits) -> None:
 
 
 def read(header: dict[str, Any], data: bytes) -> Iterator[bytes]:
-    """Yield the lines that answer one request."""
+    """Yield the lines that answer one request, measurements as they are made: none is kept here."""
     limits = Limits(**header["limits"])
     try:
         layout = parse_layout(header["layout_text"].encode("utf-8"), header["layout_file"])
-        result = read_export(
+        reading = ExportReading(
             data,
             name=header["name"],
             layout=layout,
             limits=limits,
             second_look=header["second_look"] is True,
         )
-        yield from encode(result)
+        count = 0
+        for measurement in reading.measurements():
+            count += 1
+            yield encode_measurement(measurement)
+        yield from map(encode_notice, reading.notices())
+        yield encode_end(sha256_hex(data), layout.name, count)
     except ExportRefusedError as refusal:
         yield encode_refusal(refusal)
     except (MemoryError, RecursionError):

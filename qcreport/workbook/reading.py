@@ -2,15 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Generator, Iterator, Sequence
 from fnmatch import fnmatchcase
 
 from qcreport.canonical import sha256_hex
 from qcreport.errors import ExportRefusedError
-from qcreport.measurements import Measurement, MeasurementSet
+from qcreport.measurements import Measurement, MeasurementSet, Notice
 from qcreport.workbook.assembly import assemble
 from qcreport.workbook.cells import Book, Sheet
-from qcreport.workbook.columns import find_columns
+from qcreport.workbook.columns import TableColumns, find_columns
 from qcreport.workbook.labels import trimmed
 from qcreport.workbook.layout_model import Layout, TableLayout
 from qcreport.workbook.limits import Limits
@@ -25,6 +25,7 @@ from qcreport.workbook.stray import WalkedTable, note_stray_cells
 from qcreport.workbook.walk import TableWalk
 
 _Walked = list[tuple[Sheet, list[WalkedTable]]]
+_Columns = list[tuple[Sheet, list[TableColumns]]]
 _UNSEEN = "hidden rows, marks, number formats and formulas cannot be seen in this format"
 
 
@@ -56,29 +57,58 @@ def read_export(
     ExportRefusedError
         With one of the documented codes, where anything could be read wrongly.
     """
-    limits = limits if limits is not None else Limits()
-    try:
-        notices = NoticeBook(name)
-        book = open_export(data, name=name, text=layout.text, limits=limits)
-        measurements, walked = _read_book(book, name, layout, limits, notices)
-        book.check_rest()
-        if second_look:
-            _look_again(data, book, walked, layout, notices)
-    except ExportRefusedError as refusal:
-        refusal.file = name
-        raise
+    reading = ExportReading(data, name=name, layout=layout, limits=limits, second_look=second_look)
+    measurements = tuple(reading.measurements())
     return MeasurementSet(
         export_name=name,
         export_sha256=sha256_hex(data),
         layout_name=layout.name,
         measurements=measurements,
-        notices=notices.notices(),
+        notices=reading.notices(),
     )
+
+
+class ExportReading:
+    """One reading of an export that hands out each measurement as it is made and keeps none.
+
+    The parameters are those of `read_export`.
+    """
+
+    def __init__(
+        self, data: bytes, *, name: str, layout: Layout, limits: Limits | None = None, second_look: bool
+    ) -> None:
+        self._data, self._name, self._layout, self._second_look = data, name, layout, second_look
+        self._limits = limits if limits is not None else Limits()
+        self._notices = NoticeBook(name)
+
+    def measurements(self) -> Iterator[Measurement]:
+        """Yield the measurements in export order, once.
+
+        Raises
+        ------
+        ExportRefusedError
+            Also after the last measurement: they count only when all have been taken without it.
+        """
+        layout = self._layout
+        try:
+            book = open_export(self._data, name=self._name, text=layout.text, limits=self._limits)
+            columns = yield from _read_book(book, self._name, layout, self._limits, self._notices)
+            book.check_rest()
+            if self._second_look:
+                _look_again(self._data, book, columns, layout, self._notices)
+        except ExportRefusedError as refusal:
+            refusal.file = self._name
+            raise
+
+    def notices(self) -> tuple[Notice, ...]:
+        """Return what was noted, once all measurements have been taken."""
+        return self._notices.notices()
 
 
 def _read_book(
     book: Book, name: str, layout: Layout, limits: Limits, notices: NoticeBook
-) -> tuple[tuple[Measurement, ...], _Walked]:
+) -> Generator[Measurement, None, _Columns]:
+    """Yield the measurements; return where they stood, and nothing else that takes memory."""
     _note_book(book, notices)
     try:
         export = _Export(book, name, layout, notices)
@@ -89,20 +119,23 @@ def _read_book(
         if refusal.code in ("layout_mismatch", "no_data_rows"):
             _refuse_if_empty(book)
         raise
-    measurements = assemble(
+    batches: set[str] = set()
+    for measurement in assemble(
         book, layout, limits, notices, readings=export.readings, stated=export.stated,
         sample_columns=export.sample_columns,
-    )  # fmt: skip
-    groups = frozenset(measurement.batch.casefold() for measurement in measurements)
+    ):  # fmt: skip
+        batches.add(measurement.batch)
+        yield measurement
+    groups = frozenset(batch.casefold() for batch in batches)
     for sheet, tables in export.walked:
         note_stray_cells(sheet, tables, groups, notices)
-    return measurements, export.walked
+    return [(sheet, [table.columns for table in tables]) for sheet, tables in export.walked]
 
 
-def _look_again(data: bytes, book: Book, walked: _Walked, layout: Layout, notices: NoticeBook) -> None:
+def _look_again(data: bytes, book: Book, columns: _Columns, layout: Layout, notices: NoticeBook) -> None:
     from qcreport.workbook.second_look import take_second_look
 
-    take_second_look(data, book, walked, layout.text, notices)
+    take_second_look(data, book, columns, layout.text, notices)
 
 
 def _refuse_if_empty(book: Book) -> None:
@@ -150,7 +183,7 @@ class _Export:
         self._settle_lone_names(sheet, [walk for _, walk in walks])
         for _, walk in walks:
             self.readings.extend(sorted(walk.readings, key=lambda reading: reading.row))
-        self.walked.append((sheet, [WalkedTable(c, w.end_row, frozenset(w.used_rows)) for c, w in walks]))
+        self.walked.append((sheet, [WalkedTable(c, w.end_row, w.used_rows) for c, w in walks]))
         if self._layout.sheet_pattern is not None and len(self.readings) == n_before:
             self._notices.add("sheet_without_data", detail=sheet.name or "")
 

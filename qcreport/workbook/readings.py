@@ -8,6 +8,8 @@ from qcreport.measurements import CellRef
 from qcreport.workbook.cells import Cell, Kind, Sheet
 from qcreport.workbook.layout_model import ValueLayout
 
+_MAX_KEPT_LABELS = 10_000
+
 
 class Label(NamedTuple):
     """A name as it stands in the export."""
@@ -26,6 +28,35 @@ class Label(NamedTuple):
         return CellRef(sheet=sheet, row=row, column=column)
 
 
+class RowLabel(NamedTuple):
+    """A name that stands in the row of its reading: rows with the same name share it."""
+
+    text: str
+    """As stored, or as the cell shows a number; not trimmed."""
+    column: int
+    """Column where it stands."""
+
+
+AnyLabel = Label | RowLabel
+
+
+class LabelPool:
+    """Makes names that rows share; it forgets now and then, as an export may name a million samples."""
+
+    def __init__(self) -> None:
+        self._known: dict[tuple[str, int], RowLabel] = {}
+
+    def label(self, text: str, column: int) -> RowLabel:
+        """Return a name that stands in a column of its row."""
+        key = (text, column)
+        known = self._known.get(key)
+        if known is None:
+            if len(self._known) >= _MAX_KEPT_LABELS:
+                self._known.clear()
+            known = self._known[key] = RowLabel(text, column)
+        return known
+
+
 class Reading(NamedTuple):
     """One value cell with the names that belong to it."""
 
@@ -41,11 +72,11 @@ class Reading(NamedTuple):
     """1-based."""
     cell: Cell | None
     """None where the cell is empty."""
-    group: Label
+    group: AnyLabel
     """The batch."""
-    line: Label | None
+    line: AnyLabel | None
     """The production line."""
-    sample: Label | None
+    sample: AnyLabel | None
     """The sample."""
     number: str | None
     """The number of the reading."""
@@ -62,6 +93,12 @@ class Reading(NamedTuple):
     def ref(self) -> CellRef:
         """The value's cell."""
         return CellRef(sheet=self.sheet.name, row=self.row, column=self.column)
+
+    def placed(self, label: AnyLabel) -> Label:
+        """Return a name of this reading with the place where it stands."""
+        if isinstance(label, Label):
+            return label
+        return Label(label.text, (self.sheet.name, self.row, label.column))
 
 
 def plain_text(cell: Cell | None, shown: str | None = None) -> str | None:

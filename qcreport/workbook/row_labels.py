@@ -9,7 +9,7 @@ from qcreport.workbook.columns import TableColumns, named_sources
 from qcreport.workbook.group_cells import GroupCells
 from qcreport.workbook.layout_model import Source, SourceKind, UnitFrom, ValueLayout
 from qcreport.workbook.notices import NoticeBook
-from qcreport.workbook.readings import Label, plain_text
+from qcreport.workbook.readings import AnyLabel, Label, LabelPool, plain_text
 from qcreport.workbook.refusals import quoted, refused
 from qcreport.workbook.sheet_xml import is_stored_number
 
@@ -26,9 +26,10 @@ class RowLabels:
             for name, source in self._sources.items()
             if name not in table.sources and source.kind is not SourceKind.HEADER_CELLS
         }
-        self._groups = GroupCells(book, table, notices)
+        self._pool = LabelPool()
+        self._groups = GroupCells(book, table, notices, self._pool)
         self._at = 0
-        self._of_row: dict[str, Label | None] = {}
+        self._of_row: dict[str, AnyLabel | None] = {}
 
     def _constant(self, name: str, source: Source) -> Label | None:
         """Return a name that is the same for all rows of the sheet."""
@@ -58,7 +59,7 @@ class RowLabels:
         column = self._table.sources.get(name)
         return self._sheet.cell(row, column) if column is not None else None
 
-    def _label(self, name: str, row: int) -> Label | None:
+    def _label(self, name: str, row: int) -> AnyLabel | None:
         """Return a name of a row; its values share one object."""
         if row != self._at:
             self._at, self._of_row = row, {}
@@ -66,7 +67,7 @@ class RowLabels:
             self._of_row[name] = self._found_label(name, row)
         return self._of_row[name]
 
-    def _found_label(self, name: str, row: int) -> Label | None:
+    def _found_label(self, name: str, row: int) -> AnyLabel | None:
         column = self._table.sources.get(name)
         if column is None:
             return self._constants.get(name)
@@ -76,14 +77,14 @@ class RowLabels:
             text = self._groups.above(name)
         elif text is not None and self._sources[name].repeats_below:
             self._groups.remember(name, text)
-        return None if text is None else Label(text, (self._sheet.name, row, column))
+        return None if text is None else self._pool.label(text, column)
 
     @property
     def not_text(self) -> list[tuple[CellRef, str]]:
         """Batch cells that hold no text."""
         return self._groups.not_text
 
-    def group(self, row: int) -> Label | None:
+    def group(self, row: int) -> AnyLabel | None:
         """Return the batch of a row, or None where there is none."""
         column = self._table.sources.get("group")
         if column is None:
@@ -94,11 +95,11 @@ class RowLabels:
         """Return the batch in the heading of a column of a wide table."""
         return self._groups.heading(self._table.layout.header_rows[-1], column)
 
-    def line(self, row: int) -> Label | None:
+    def line(self, row: int) -> AnyLabel | None:
         """Return the production line of a row."""
         return self._label("line", row)
 
-    def sample(self, row: int) -> Label | None:
+    def sample(self, row: int) -> AnyLabel | None:
         """Return the sample of a row."""
         return self._label("sample", row)
 

@@ -7,25 +7,24 @@ reader lost is found as well as one that it read differently.
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Iterator, Sequence
 from typing import Any
 
 from qcreport.errors import ExportRefusedError
 from qcreport.measurements import CellRef
 from qcreport.workbook.cell_agreement import Agreement
 from qcreport.workbook.cells import Book, Cell, Sheet
+from qcreport.workbook.columns import TableColumns
 from qcreport.workbook.layout_model import TextForm
 from qcreport.workbook.notices import NoticeBook
 from qcreport.workbook.refusals import cells_in_words, quoted, refused
-from qcreport.workbook.stray import WalkedTable
 
 _LISTED = 5
-_EMPTY: Mapping[int, Cell] = {}
 _NO_SECOND_READER = "there is no second reader for this format"
 _SPARSE = "cells lie so far apart that the second reader was not asked"
 _CANNOT_OPEN = "the second reader cannot open the file"
 
-Walked = Sequence[tuple[Sheet, Sequence[WalkedTable]]]
+Walked = Sequence[tuple[Sheet, Sequence[TableColumns]]]
 Difference = tuple[CellRef, str, str]
 
 
@@ -41,7 +40,7 @@ def take_second_look(
     book : Book
         The opened export.
     walked : sequence of (Sheet, tables)
-        The sheets that were read, as the first reader found them.
+        The sheets that were read, as the first reader found them, with the columns of their tables.
     text : TextForm or None
         How a text export is written.
     notices : NoticeBook
@@ -77,7 +76,7 @@ def take_second_look(
 def _too_sparse(sheet: Sheet) -> bool:
     """Return whether the second reader, which allocates the whole range, would need far too much for it."""
     rows, columns = sheet.extent
-    return rows * columns > max(1_000_000, 4 * sum(len(cells) for cells in sheet.rows.values()))
+    return rows * columns > max(1_000_000, 4 * sheet.rows.n_cells())
 
 
 def _second_reader(data: bytes, text: TextForm | None) -> Any:
@@ -86,12 +85,12 @@ def _second_reader(data: bytes, text: TextForm | None) -> Any:
     return read_workbook(data) if text is None else read_text(data, text)
 
 
-def _columns(tables: Sequence[WalkedTable]) -> tuple[int, ...]:
+def _columns(tables: Sequence[TableColumns]) -> tuple[int, ...]:
     """Return the columns that decide results: labels, values and units of all tables of a sheet."""
     wanted: set[int] = set()
     for table in tables:
-        wanted.update(table.columns.sources.values())
-        for value, columns in table.columns.values:
+        wanted.update(table.sources.values())
+        for value, columns in table.values:
             wanted.update(columns)
             if value.unit_column is not None:
                 wanted.add(value.unit_column)
@@ -105,17 +104,17 @@ def _compare(
     differences: list[Difference] = []
     agrees, last = agreement.agrees, 0
     for last, (shift, record) in enumerate(records, start=1):
-        cells, width = sheet.rows.get(last, _EMPTY), len(record)
+        cells, width = sheet.rows.filled(last), len(record)
         for column in columns:
             place = column - shift - 1
             other = record[place] if 0 <= place < width else ""
             cell = cells.get(column)
             if not agrees(cell, other):
                 differences.append(_difference(sheet, last, column, cell, other))
-    for row, cells in sheet.rows.items():
+    for row in sheet.rows:
         if row > last:
             for column in columns:
-                if not agrees(cell := cells.get(column), ""):
+                if not agrees(cell := sheet.rows.cell(row, column), ""):
                     differences.append(_difference(sheet, row, column, cell, ""))
     return differences
 

@@ -12,6 +12,7 @@ from qcreport.workbook.cells import Cell, Kind
 from qcreport.workbook.places import MAX_COLUMN, MAX_ROW, Area, parse_area, parse_column
 from qcreport.workbook.refusals import damaged, quoted
 from qcreport.workbook.rich_text import TextCollector, checked_text
+from qcreport.workbook.rows import Rows
 from qcreport.workbook.xml_stream import Attributes, is_on, main_tags, parse_xml
 
 _TAGS = main_tags(
@@ -43,7 +44,7 @@ class SheetScan:
     )  # fmt: skip
 
     def __init__(self, strings: Strings, n_styles: int, count: Callable[[int, int], None]) -> None:
-        self.rows: dict[int, dict[int, Cell]] = {}
+        self.rows = Rows()
         self.hidden_rows: set[int] = set()
         self.hidden_columns: list[tuple[int, int]] = []
         self.merges: list[Area] = []
@@ -112,7 +113,7 @@ class SheetScan:
             raise damaged(f"A row is numbered {text!r}.")
         self._row, self._column = row, 0
         self._row_text = str(row)
-        self._cells = self.rows.get(row, {})
+        self._cells = self.rows.filled(row)
         if is_on(attributes.get("hidden")) or attributes.get("ht") == "0":
             self.hidden_rows.add(row)
 
@@ -177,7 +178,7 @@ class SheetScan:
             self._inline.end(tag)
         elif tag == "row" and self._in_data:
             if self._cells:
-                self.rows[self._row] = self._cells
+                self.rows.put(self._row, self._cells)
                 self._count(len(self.rows), len(self._cells))
             self._cells = {}
         elif tag == "sheetData":
@@ -195,10 +196,10 @@ class SheetScan:
 
     def extent(self) -> tuple[int, int]:
         """Return the rows and columns of the range that holds all cells, those with an empty text too."""
-        rows = set(self.rows)
-        columns = {column for cells in self.rows.values() for column in cells}
+        rows = [min(self.rows), max(self.rows)] if self.rows else []
+        columns = set(self.rows.columns)
         if (empty := self._empty) is not None:
-            rows.update((empty.first_row, empty.last_row))
+            rows += [empty.first_row, empty.last_row]
             columns.update((empty.first_column, empty.last_column))
         if not rows:
             return 0, 0
@@ -276,13 +277,3 @@ def scan_sheet(
     scan = SheetScan(strings, n_styles, count)
     parse_xml(chunks, part=part, start=scan.start, end=scan.end, text=scan.text)
     return scan
-
-
-def in_order(rows: dict[int, dict[int, Cell]]) -> dict[int, dict[int, Cell]]:
-    """Return rows and columns in ascending order; files may hold them in any."""
-    ordered = {}
-    for row in sorted(rows):
-        columns = rows[row]
-        keys = list(columns)
-        ordered[row] = columns if keys == sorted(keys) else {c: columns[c] for c in sorted(keys)}
-    return ordered

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from collections.abc import Set as AbstractSet
 from typing import NamedTuple
 
 from qcreport.measurements import CellRef
@@ -20,7 +21,7 @@ class WalkedTable(NamedTuple):
     """Where its parts stand."""
     end_row: int
     """Last row that was looked at."""
-    used_rows: frozenset[int]
+    used_rows: AbstractSet[int]
     """Rows that were read or left out on purpose."""
 
 

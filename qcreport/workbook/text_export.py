@@ -11,6 +11,7 @@ from qcreport.workbook.limits import Limits
 from qcreport.workbook.ooxml import too_many_rows
 from qcreport.workbook.refusals import damaged, refused
 from qcreport.workbook.rich_text import MAX_TEXT
+from qcreport.workbook.rows import Rows
 
 TEXT_SHEET = SheetInfo(name="")
 """A text export is one sheet without a name."""
@@ -46,7 +47,7 @@ def _decoded(data: bytes, form: TextForm) -> str:
 
 
 def _read(text: str, form: TextForm, limits: Limits) -> Sheet:
-    rows: dict[int, dict[int, Cell]] = {}
+    rows = Rows()
     n_cells = 0
     csv.field_size_limit(MAX_TEXT)
     records = csv.reader(io.StringIO(text, newline=""), delimiter=form.delimiter, strict=True)
@@ -55,7 +56,7 @@ def _read(text: str, form: TextForm, limits: Limits) -> Sheet:
             cells = {column: Cell(Kind.TEXT, field) for column, field in enumerate(record, start=1) if field}
             if not cells:
                 continue
-            rows[number] = cells
+            rows.put(number, cells)
             n_cells += len(cells)
             _check(len(rows), n_cells, limits)
     except csv.Error as error:

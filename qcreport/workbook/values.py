@@ -28,6 +28,7 @@ from qcreport.workbook.value_refusals import (
 
 _SHOWN_DIGITS = 15
 """Significant digits that spreadsheet programs show of a stored number."""
+_MAX_KEPT_NUMBERS = 10_000
 
 
 class Value(NamedTuple):
@@ -53,7 +54,8 @@ class ValueReader:
         self._missing = {text.casefold() for text in forms.missing}
         self._missing_numbers = {float(text) for text in forms.missing if is_stored_number(text)}
         self._not_detected = {text.casefold() for text in forms.not_detected}
-        self._values: dict[int, Value] = {}
+        self._values: list[Value] = []
+        self._numbers: dict[tuple[str, int], Value] = {}
         self._texts: dict[int, TextValue] = {}
         self._percent: list[Reading] = []
         self._plain: list[Reading] = []
@@ -64,6 +66,7 @@ class ValueReader:
 
     def read(self, readings: Sequence[Reading]) -> list[Value]:
         """Return the values in the order of the readings."""
+        self._values = [MISSING] * len(readings)
         for index, reading in enumerate(readings):
             self._take(index, reading)
         self._refuse()
@@ -72,7 +75,7 @@ class ValueReader:
             self._values[index] = value
         for index, reading in enumerate(readings):
             self._note(reading, self._values[index])
-        return [self._values[index] for index in range(len(readings))]
+        return self._values
 
     def _take(self, index: int, reading: Reading) -> None:
         cell = reading.cell
@@ -102,6 +105,12 @@ class ValueReader:
             self._errors.append((reading.ref, error))
 
     def _take_number(self, index: int, reading: Reading, cell: Cell) -> None:
+        """Take a stored number; the same number in the same style is one object."""
+        known = self._numbers.get((cell.text, cell.style))
+        if known is not None:
+            self._plain.append(reading)
+            self._values[index] = known
+            return
         number_format = self._book.number_format(cell)
         number = float(cell.text) if is_stored_number(cell.text) else math.nan
         if not math.isfinite(number):
@@ -118,7 +127,10 @@ class ValueReader:
         else:
             self._plain.append(reading)
             fixed = number_format.decimals
-            self._values[index] = Value(number, _shown_decimals(number) if fixed is None else fixed, None)
+            value = Value(number, _shown_decimals(number) if fixed is None else fixed, None)
+            self._values[index] = value
+            if len(self._numbers) < _MAX_KEPT_NUMBERS:
+                self._numbers[cell.text, cell.style] = value
 
     def _take_text(self, index: int, reading: Reading, cell: Cell) -> None:
         text = cell.text.strip()

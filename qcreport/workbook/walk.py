@@ -11,7 +11,7 @@ from qcreport.workbook.columns import TableColumns
 from qcreport.workbook.group_cells import refuse_not_text
 from qcreport.workbook.layout_model import Layout, Shape
 from qcreport.workbook.notices import NoticeBook
-from qcreport.workbook.readings import Label, Reading
+from qcreport.workbook.readings import AnyLabel, Reading
 from qcreport.workbook.row_labels import RowLabels
 from qcreport.workbook.row_refusals import refuse_group_missing, refuse_summary_row
 
@@ -35,7 +35,7 @@ class TableWalk:
         self._sheet: Sheet = table.sheet
         self._labels = RowLabels(book, table, file, notices)
         self.readings: list[Reading] = []
-        self.lone_names: list[tuple[int, Label]] = []
+        self.lone_names: list[tuple[int, AnyLabel]] = []
         self.used_rows: set[int] = set()
         self.end_row = table.layout.first_row - 1
         self._groupless: list[CellRef] = []
@@ -125,7 +125,7 @@ class TableWalk:
                 number = self._across_number(column, ordinal) if across else self._labels.number(row)
                 self._add(row, column, cells.get(column), group, number, position)
 
-    def add_missing(self, row: int, group: Label) -> None:
+    def add_missing(self, row: int, group: AnyLabel) -> None:
         """Add a row that names a known batch and holds nothing else: its values are missing."""
         for position, (_, columns) in enumerate(self._table.values):
             self._add(row, columns[0], None, group, self._labels.number(row), position)
@@ -146,7 +146,7 @@ class TableWalk:
             self._add(row, column, cells.get(column), group, self._labels.number(row), 0)
 
     def _add(
-        self, row: int, column: int, cell: Cell | None, group: Label, number: str | None, position: int
+        self, row: int, column: int, cell: Cell | None, group: AnyLabel, number: str | None, position: int
     ) -> None:
         labels = self._labels
         self.readings.append(

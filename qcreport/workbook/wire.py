@@ -1,7 +1,7 @@
 """What the reader child answers: JSON lines, each checked strictly by the parent.
 
-Lines are arrays `[kind, …]`: `notice` and `measurement` in any number, then one `end`; or, instead of
-everything, one `refused`.
+Lines are arrays `[kind, …]`: `measurement` and `notice` in any number, then one `end`; or, instead of the
+end, one `refused`, after which nothing before it counts.
 """
 
 from __future__ import annotations
@@ -25,6 +25,7 @@ MAX_LINE: Final = 4 * 1024 * 1024
 _MAX_TEXT = 40_000
 _MAX_ROW = 64 * 1024 * 1024
 _MARKS = frozenset(("struck", "commented", "hidden"))
+_JSON = json.JSONEncoder(allow_nan=False, separators=(",", ":"))
 _CENSORING = {member.value: member for member in Censoring}
 
 
@@ -34,17 +35,30 @@ class WireError(Exception):
 
 def encode(result: MeasurementSet) -> Iterator[bytes]:
     """Return the lines of a reading."""
-    for notice in result.notices:
-        yield _line(["notice", notice.code, list(notice.cells), notice.text])
-    for m in result.measurements:
-        yield _line(
-            [
-                "measurement", m.characteristic, m.batch, m.line, m.sample, m.reading, m.value, m.text,
-                m.decimals, m.unit, m.censored, m.status, m.time, m.cell.sheet, m.cell.row, m.cell.column,
-                list(m.marks), [list(factor) for factor in m.factors],
-            ]
-        )  # fmt: skip
-    yield _line(["end", result.export_sha256, result.layout_name, len(result.measurements)])
+    yield from map(encode_measurement, result.measurements)
+    yield from map(encode_notice, result.notices)
+    yield encode_end(result.export_sha256, result.layout_name, len(result.measurements))
+
+
+def encode_measurement(m: Measurement) -> bytes:
+    """Return the line of a measurement."""
+    return _line(
+        [
+            "measurement", m.characteristic, m.batch, m.line, m.sample, m.reading, m.value, m.text,
+            m.decimals, m.unit, m.censored, m.status, m.time, m.cell.sheet, m.cell.row, m.cell.column,
+            m.marks, m.factors,
+        ]
+    )  # fmt: skip
+
+
+def encode_notice(notice: Notice) -> bytes:
+    """Return the line of a notice."""
+    return _line(["notice", notice.code, notice.cells, notice.text])
+
+
+def encode_end(sha256: str, layout_name: str, n_measurements: int) -> bytes:
+    """Return the line that makes the answer whole."""
+    return _line(["end", sha256, layout_name, n_measurements])
 
 
 def encode_refusal(refusal: ExportRefusedError) -> bytes:
@@ -58,7 +72,7 @@ def encode_refusal(refusal: ExportRefusedError) -> bytes:
 
 
 def _line(record: list[Any]) -> bytes:
-    return json.dumps(record, allow_nan=False, separators=(",", ":")).encode("ascii") + b"\n"
+    return _JSON.encode(record).encode("ascii") + b"\n"
 
 
 class Decoder:

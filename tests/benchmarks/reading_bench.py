@@ -4,8 +4,10 @@
 
 Both sides read the same workbook of 100,000 rows of 6 cells in a process of its own; ours with all checks,
 the second look and the way back to the parent, the general library with nothing but a loop over the cells.
-Times are processor seconds, both sides in turn, the median over the rounds. Prints one line a figure and
-exits with 1 where a goal is missed by more than half.
+Times are processor seconds, both sides in turn, the median over the rounds. The memory is the peak of the
+reader child's resident pages over a workbook of 1,000,000 rows unless told otherwise, read with all checks
+under the address space that a reading is allowed by default; the whole run takes some five minutes. Prints
+one line a figure and exits with 1 where a goal is missed by more than half.
 """
 
 from __future__ import annotations
@@ -20,6 +22,7 @@ import tempfile
 import time
 import zipfile
 from collections.abc import Iterator
+from dataclasses import replace
 from pathlib import Path
 
 from qcreport.workbook.limits import MEGABYTE, Limits
@@ -122,11 +125,11 @@ def seconds() -> float:
     return time.process_time() + children.ru_utime + children.ru_stime
 
 
-def ours(data: bytes, *, second_look: bool, rows: int = ROWS) -> float:
+def ours(data: bytes, *, second_look: bool, rows: int = ROWS, limits: Limits = LIMITS) -> float:
     """Return the seconds of one reading with all checks."""
     start = seconds()
     result = read_in_child(
-        data, name="bench.xlsx", layout_bytes=LAYOUT, layout_file="bench.toml", limits=LIMITS,
+        data, name="bench.xlsx", layout_bytes=LAYOUT, layout_file="bench.toml", limits=limits,
         second_look=second_look,
     )  # fmt: skip
     codes = [notice.code for notice in result.notices]
@@ -170,7 +173,12 @@ def times(rounds: int) -> bool:
 
 def memory(rows: int) -> bool:
     """Print the peak memory of a reading of so many rows; return whether it misses by more than half."""
-    ours(workbook(rows), second_look=True, rows=rows)
+    ours(
+        workbook(rows),
+        second_look=True,
+        rows=rows,
+        limits=replace(LIMITS, memory_bytes=Limits().memory_bytes),
+    )
     peak = resource.getrusage(resource.RUSAGE_CHILDREN).ru_maxrss / 1024
     allowed = 1024 * rows / 1_000_000
     print(f"R3 memory of {rows:,} rows    {peak:8.0f} MB at most {allowed:.0f} MB", flush=True)

@@ -7,6 +7,7 @@ from qcreport.analysis.contrasts import estimated_contrasts
 from qcreport.analysis.description import letters, normality, overall_effect, pair_effects
 from qcreport.analysis.design_rate import design_rate
 from qcreport.analysis.flags import flag
+from qcreport.analysis.known_scatter import known_scatter
 from qcreport.analysis.left_out import groups_without, units_left_out, with_left_out
 from qcreport.analysis.outcome import Outcome, Question, decide, sensitivity
 from qcreport.analysis.ranks import overall_by_ranks
@@ -34,6 +35,7 @@ def characteristic_result(
     outcome = decide(groups, question)
     comparison, c = outcome.comparison, question.characteristic
     pairs = () if comparison is None else comparison.pairs
+    known = known_scatter(c, question.history)
     table = _variance_table(outcome.ready)
     contrasts, missing = estimated_contrasts(outcome, question)
     result = CharacteristicResult(
@@ -46,7 +48,8 @@ def characteristic_result(
         direction=c.direction.value,
         lower_limit=c.lower_limit,
         upper_limit=c.upper_limit,
-        known_scatter=c.scatter,
+        known_scatter=None if known is None else known.sd,
+        known_scatter_from=None if known is None else known.source,
         independent_unit=question.plan.independent_unit.value,
         reference=question.plan.reference,
         groups=tuple(

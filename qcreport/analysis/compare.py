@@ -7,6 +7,7 @@ from dataclasses import dataclass, replace
 from typing import cast
 
 from qcreport.analysis.comparable import Comparable, all_equal
+from qcreport.analysis.known_scatter import KnownScatter
 from qcreport.analysis.planning import MOST_NEEDED, OPEN_ANSWERS, Margin, Planning, df_of
 from qcreport.analysis.procedures import on_means, run_procedure
 from qcreport.analysis.ranks import compare_by_ranks
@@ -45,6 +46,7 @@ def compare(
     *,
     alpha: float,
     scale: Scale,
+    known: KnownScatter | None = None,
     sizes: bool = True,
 ) -> Comparison | None:
     """Return every pair's numbers and answer; None for a procedure of nested designs.
@@ -83,13 +85,13 @@ def compare(
         ),
         margin=margin,
         groups=by_label,
-        scatter=characteristic.scatter,
+        scatter=None if known is None else known.sd,
     )
     planned = sizes and len(posthoc.comparisons) <= MOST_NEEDED
     pairs = tuple(
         _pair(c, planning if sizes else None, margin, scale, needed=planned) for c in posthoc.comparisons
     )
-    notices += _known_scatter(characteristic, scale)
+    notices += _known_scatter(characteristic, scale, known)
     return Comparison(
         posthoc=posthoc,
         summaries=summaries,
@@ -202,14 +204,16 @@ def _pair(
     )
 
 
-def _known_scatter(characteristic: CharacteristicPlan, scale: Scale) -> tuple[Notice, ...]:
-    """Say that what can be detected rests on the plan's scatter and not on this export's."""
-    if characteristic.scatter is None:
+def _known_scatter(
+    characteristic: CharacteristicPlan, scale: Scale, known: KnownScatter | None
+) -> tuple[Notice, ...]:
+    """Say that what can be detected rests on a scatter from elsewhere and not on this export's."""
+    if known is None:
         return ()
     unit = "natural logarithms" if scale is Scale.LOG else characteristic.unit
     text = (
-        f"{characteristic.title}: the detectable differences rest on the scatter that the plan gives "
-        f"(standard deviation {characteristic.scatter:g} {unit}), not on the scatter seen in this export."
+        f"{characteristic.title}: the detectable differences rest on the scatter {known.words} "
+        f"(standard deviation {known.sd:g} {unit}), not on the scatter seen in this export."
     )
     return (Notice(code="known_scatter_used", cells=(), text=text),)
 

@@ -13,6 +13,7 @@ from dataclasses import dataclass, replace
 from qcreport.analysis.comparable import Comparable, comparable
 from qcreport.analysis.compare import Comparison, compare
 from qcreport.analysis.facts import Gathered, gather
+from qcreport.analysis.known_scatter import known_scatter
 from qcreport.analysis.result import ChangedAnswer, PairResult, Sensitivity
 from qcreport.analysis.screen import Group
 from qcreport.errors import StatisticsError
@@ -107,6 +108,7 @@ def _run(procedure: str, ready: Comparable, question: Question) -> tuple[Compari
             question.characteristic,
             alpha=question.alpha,
             scale=question.plan.scale,
+            known=known_scatter(question.characteristic, question.history),
             sizes=not question.beside,
         )
     except StatisticsError as error:

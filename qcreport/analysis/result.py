@@ -73,7 +73,9 @@ class CharacteristicResult:
     upper_limit: float | None
     """Specification limit, for orientation."""
     known_scatter: float | None = None
-    """Standard deviation of a result by the plan, which `detectable` rests on; None: as seen here."""
+    """Standard deviation of a result by plan or history, which `detectable` rests on; None: as seen here."""
+    known_scatter_from: str | None = None
+    """`plan` or `history`; None: as seen here."""
     independent_unit: str
     """reading, sample or batch."""
     reference: str | None
@@ -142,6 +144,7 @@ class CharacteristicResult:
             "lower_limit": finite_or_none(self.lower_limit),
             "upper_limit": finite_or_none(self.upper_limit),
             "known_scatter": finite_or_none(self.known_scatter),
+            "known_scatter_from": self.known_scatter_from,
             "independent_unit": self.independent_unit,
             "reference": self.reference,
             "groups": [g.to_json() for g in self.groups],

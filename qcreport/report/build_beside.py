@@ -26,7 +26,8 @@ def design_blocks(numbers: Numbers) -> list[Block]:
     ends = [e for p in pairs for e in p.detectable_limits or () if e is not None and math.isfinite(e)]
     limits = _span(ends, numbers) if ends and known is None else ""
     scatter = "" if known is None else numbers.with_unit(numbers.mean(known))
-    return [Paragraph(text=words.detectable(found, scatter, limits), note=True)]
+    source = numbers.result.known_scatter_from or "plan"
+    return [Paragraph(text=words.detectable(found, scatter, source, limits), note=True)]
 
 
 def _span(values: Sequence[float], numbers: Numbers) -> str:

@@ -5,14 +5,16 @@ from __future__ import annotations
 from qcreport.report.words_de_figure import FigureWordsDe
 from qcreport.report.words_en_beside import BesideWords
 
+_SCATTER_FROM = {"plan": "aus dem Plan", "history": "früherer Chargen"}
+
 
 class BesideWordsDe(FigureWordsDe, BesideWords):
     """Design, effects, contrasts, the decision rule, statements."""
 
-    def detectable(self, span: str, scatter: str, limits: str) -> str:
+    def detectable(self, span: str, scatter: str, source: str, limits: str) -> str:
         """Return what the design could have shown."""
         seen = (
-            f"bei der Streuung von {scatter} aus dem Plan"
+            f"bei der Streuung von {scatter} " + _SCATTER_FROM[source]
             if scatter
             else "wenn die Streuung ist wie hier gesehen"
         )

@@ -4,14 +4,16 @@ from __future__ import annotations
 
 from qcreport.report.words_en_figure import FigureWords
 
+_SCATTER_FROM = {"plan": "that the plan gives", "history": "of earlier batches"}
+
 
 class BesideWords(FigureWords):
     """Design, effects, contrasts, the decision rule, statements."""
 
-    def detectable(self, span: str, scatter: str, limits: str) -> str:
+    def detectable(self, span: str, scatter: str, source: str, limits: str) -> str:
         """Return what the design could have shown."""
         seen = (
-            f"at the scatter of {scatter} that the plan gives"
+            f"at the scatter of {scatter} " + _SCATTER_FROM[source]
             if scatter
             else "if the scatter is as seen here"
         )

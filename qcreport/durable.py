@@ -72,7 +72,7 @@ def clear_temporaries(folder: Path, *, before_s: float) -> int:
     process at work.
     """
     cleared = 0
-    for path in folder.rglob(".*.tmp"):
+    for path in _temporaries(folder):
         try:
             status = path.lstat()
             if stat.S_ISREG(status.st_mode) and status.st_mtime < before_s:
@@ -81,6 +81,13 @@ def clear_temporaries(folder: Path, *, before_s: float) -> int:
         except OSError:
             continue  # gone meanwhile, or not ours to remove: it is hidden and does no harm
     return cleared
+
+
+def _temporaries(folder: Path) -> list[Path]:
+    try:
+        return list(folder.rglob(".*.tmp"))
+    except OSError:
+        return []  # a folder went away while it was listed: clearing can wait
 
 
 def failed(what: str, error: OSError) -> EnvironmentFailedError:

@@ -54,7 +54,7 @@ def test_every_report_was_verified(demo: Demo) -> None:
         assert [tail(number) for number, _ in verified] == [tail(number) for number in REPORTED]
         assert {words for _, words in verified} == {
             "nothing changed since it was sealed; all 6 attachments match; "
-            "computed anew from them, every number repeats."
+            "computed anew from them, every number repeats, and the pages show them."
         }
 
 

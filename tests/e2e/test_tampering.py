@@ -58,7 +58,7 @@ def in_the_last_line(report: bytes, path: Path) -> int:
     ("find", "says"),
     [
         (in_the_header, [CHANGED]),
-        (in_the_page, [CHANGED]),
+        (in_the_page, [CHANGED, UNREADABLE]),
         (in_the_attached("export.xlsx"), [CHANGED, UNREADABLE]),
         (in_the_attached("result.json"), [CHANGED, UNREADABLE]),
         (in_the_signature, ["Not valid: the seal does not hold: the signature"]),

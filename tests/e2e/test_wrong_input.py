@@ -337,11 +337,11 @@ def test_a_share_that_is_not_mounted(site: Site, an_export: Path, tmp_path: Path
 
 
 def test_a_reports_folder_that_cannot_be_written(site: Site, an_export: Path) -> None:
-    """/sys takes no file from anybody, root included; once mended, the same number is used."""
-    replaced(site.settings, 'reports = "reports"', 'reports = "/sys"')
+    """/proc/sys/kernel takes no file from anybody, root included; once mended, the same number is used."""
+    replaced(site.settings, 'reports = "reports"', 'reports = "/proc/sys/kernel"')
     said = failed(site, an_export)
-    assert "/sys/" in said
-    replaced(site.settings, 'reports = "/sys"', 'reports = "reports"')
+    assert "/proc/sys/kernel/" in said
+    replaced(site.settings, 'reports = "/proc/sys/kernel"', 'reports = "reports"')
     site.done("compare", an_export)
     (report,) = site.reports
     assert report.name.endswith("-0001 lap-shear-2411.pdf")

@@ -10,7 +10,7 @@ from qcreport.analysis.left_out import marked_left_out
 from qcreport.canonical import to_readable_json_bytes
 from qcreport.pipeline.job import Done, Job
 from qcreport.plan import parse_plan
-from qcreport.report.attachment import Attachment
+from qcreport.report.attachment import EXPORT_TYPES, Attachment, export_attachment_name
 from qcreport.rules import parse_rules
 
 _KINDS = {
@@ -19,14 +19,6 @@ _KINDS = {
     "rules.toml": ("Source", "The decision table that chose the procedure", "application/toml"),
     "context.json": ("Supplement", "Facts of the moment at which the report was made", "application/json"),
     "result.json": ("Data", "The result at full precision", "application/json"),
-}
-_EXPORT_TYPES = {
-    "xlsx": "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet",
-    "xlsm": "application/vnd.ms-excel.sheet.macroEnabled.12",
-    "xls": "application/vnd.ms-excel",
-    "xlsb": "application/vnd.ms-excel.sheet.binary.macroEnabled.12",
-    "ods": "application/vnd.oasis.opendocument.spreadsheet",
-    "csv": "text/csv",
 }
 
 
@@ -79,15 +71,9 @@ def attached_files(job: Job, result: bytes) -> tuple[tuple[str, bytes], ...]:
     return tuple(sorted(files.items()))
 
 
-def export_attachment_name(export_name: str) -> str:
-    """Return `export.EXT`; an extension that is none of ours becomes `bin`."""
-    extension = export_name.rsplit(".", 1)[-1].lower() if "." in export_name else ""
-    return f"export.{extension}" if extension in _EXPORT_TYPES else "export.bin"
-
-
 def _attachment(name: str, data: bytes) -> Attachment:
     if name.startswith("export."):
-        mime = _EXPORT_TYPES.get(name.rsplit(".", 1)[-1], "application/octet-stream")
+        mime = EXPORT_TYPES.get(name.rsplit(".", 1)[-1], "application/octet-stream")
         return Attachment(
             name=name, data=data, relationship="Source", description="The export as it was dropped", mime=mime
         )

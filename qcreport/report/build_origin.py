@@ -2,22 +2,13 @@
 
 from __future__ import annotations
 
-from pathlib import PurePosixPath
-
 from qcreport.analysis.context import Context
 from qcreport.analysis.result import Result
 from qcreport.canonical import in_groups_of_eight
+from qcreport.report.attachment import export_attachment_name
 from qcreport.report.blocks import Facts, Paragraph, Section, Steps, Subheading
 from qcreport.report.moments import local_time
 from qcreport.report.words_en import Words
-
-SAFE_SUFFIXES = frozenset({".xlsx", ".xlsm", ".xls", ".xlsb", ".ods", ".csv"})
-
-
-def export_attachment_name(export_name: str) -> str:
-    """Return the fixed name under which the export travels inside the report."""
-    suffix = PurePosixPath(export_name).suffix.lower()
-    return f"export{suffix}" if suffix in SAFE_SUFFIXES else "export.bin"
 
 
 def origin_section(result: Result, context: Context, words: Words) -> Section:

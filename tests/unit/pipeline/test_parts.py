@@ -13,10 +13,11 @@ from signing.keys_fixture import NOW, PASSPHRASE
 from qcreport.errors import ConfigError, EnvironmentFailedError, ExportRefusedError, SigningDeniedError
 from qcreport.measurements import MeasurementSet
 from qcreport.pipeline.choose_plans import fitting_plans
-from qcreport.pipeline.compute import attached_files, export_attachment_name
+from qcreport.pipeline.compute import attached_files
 from qcreport.pipeline.job import Job
 from qcreport.pipeline.key import load_service_key
 from qcreport.pipeline.workers import PASSPHRASE_VARIABLE
+from qcreport.report.attachment import export_attachment_name
 from qcreport.settings.plans import SettingsFile
 from qcreport.signing.new_key import new_key
 

@@ -13,9 +13,9 @@ from scipy import stats
 from qcreport.analysis.result import NotCompared, Result, RuleApplied, TraceStep
 from qcreport.measurements import Censoring, Notice
 from qcreport.plan.model import PROCEDURES, RANKS, Approval, Unit
+from qcreport.report.attachment import export_attachment_name
 from qcreport.report.blocks import Cells, Facts, Formula, Paragraph, Section, Steps, Subheading, Table
 from qcreport.report.build import build_model
-from qcreport.report.build_origin import export_attachment_name
 from qcreport.report.letters import letter_name, letters_of
 from qcreport.report.model import ReportModel
 
